@@ -1,0 +1,88 @@
+"""Every source of slow frequency noise, their sum, and what a measured T2* leaves unexplained.
+
+A new noise source is one law, one line here and one argument of `static_noise`.
+"""
+
+from __future__ import annotations
+
+from planner.switches import IS_LOOSE
+from planner.declare import Bound, Derived, Input, Unknown, optional
+from planner.physics import dephasing, noise, nuclei, zeeman
+
+_MEASURED = "qubit.t2_star"
+_NO_T2_STAR = Unknown("no measured T2* is typed", _MEASURED)
+
+DERIVEDS = (
+    Derived("noise.bath", nuclei.bath_noise, {
+        "moment": "host.moment", "spinful_fraction": "model.spinful_fraction", "nuclei": "model.nuclei"}, shown=False),
+    Derived("noise.nuclear", nuclei.nuclear_noise, {
+        "model": "noise.bath", "typed": optional("qubit.nuclear_noise"), "tracked": optional("qubit.tracked_noise"),
+        "axis_share": optional("larmor.axis"), "is_hole": "host.hole"}, heading="nuclei", display="kHz",
+        bound=Bound(nuclei.few_nuclei, {
+            "nuclei": "model.nuclei", "spinful_fraction": "model.spinful_fraction", "typed": "qubit.nuclear_noise",
+            "tracked": "qubit.tracked_noise", "t2_star": _MEASURED},
+            "few nuclei: the bath formula is only an upper bound, type nuclear_noise or t2_star first"),
+        help="slow rms of the well's nuclear spins"),
+    Derived("noise.barrier_bath", nuclei.barrier_bath_noise, {
+        "moment": "host.barrier_moment", "germanium": "model.barrier_germanium", "spinful": "model.barrier_spinful",
+        "share": "model.barrier_share", "nuclei": "model.barrier_nuclei"}, shown=False),
+    Derived("noise.barrier", nuclei.barrier_noise, {
+        "model": "noise.barrier_bath", "typed": optional("qubit.nuclear_noise")}, heading="barrier", display="kHz",
+        help="slow rms of the barrier's 73Ge"),
+    Derived("noise.magnet", zeeman.vector_uncertainty, {
+        "field_response": "larmor.response", "uncertainty": "magnet.noise"}, heading="magnet", display="kHz",
+        help="slow rms from the magnet's field noise"),
+    Derived("noise.drift", noise.drift_noise, {
+        "field_slope": "larmor.field_slope", "field": "magnet.field", "drift": "magnet.drift",
+        "settle_slope": "magnet.settle_slope", "since_ramp": optional("magnet.since_ramp"),
+        "interval": "calibration.interval"}, heading="drift", display="kHz",
+        help="frequency change by the magnet's drift over one calibration interval"),
+    Derived("noise.calibration", noise.calibration_noise, {
+        "contrast": "calibration.contrast", "wait": "calibration.wait", "t2_star": "coherence.t2_star",
+        "shots": "calibration.shots"}, heading="calibr.", display="kHz",
+        unknown=Unknown("calibration.wait is too long for T2*", "calibration.wait"),
+        help="precision of the frequency calibration"),
+    Derived("noise.clock", noise.scaled_tone, {"frequency": "larmor.frequency", "change": "clock.change"},
+            heading="clock", display="kHz", help="shift by the change of the reference since calibration"),
+    Derived("noise.loose", noise.loose_noise, {
+        "tone": Input("clock.loose_tone", when=IS_LOOSE), "drift": "clock.loose_drift"}, heading="loose", display="kHz",
+        help="shift by the instrument that is not locked"),
+    Derived("noise.charge_amplitude", noise.charge_amplitude, {
+        "typed": optional("qubit.frequency_noise"), "own_relative": optional("qubit.relative_noise"),
+        "frequency": "larmor.frequency", "gradient": optional("qubit.gradient"), "g": "larmor.g",
+        "displacement": optional("model.displacement"), "charge_noise": optional("model.charge_noise"),
+        "material_relative": optional("model.relative_noise"), "is_hole": "host.hole",
+        "local_field": "qubit.local_field"}, heading="A 1 Hz", display="kHz/rtHz",
+        unknown=Unknown("it has a local field but no charge noise: type frequency_noise, relative_noise or gradient",
+                        "qubit.frequency_noise"),
+        help="1/f amplitude of the qubit's frequency at 1 Hz"),
+    Derived("noise.charge", dephasing.flicker_rms, {
+        "amplitude": "noise.charge_amplitude", "lowest": "calibration.lowest", "time": "workload.noise_time"},
+        heading="charge", display="kHz", help="equivalent rms of charge noise over the longest wait (else one gate)"),
+    Derived("noise.white_density", noise.or_zero, {"density": optional("qubit.white_noise")}, shown=False),
+    Derived("noise.white", dephasing.white_rms, {
+        "density": "noise.white_density", "time": "workload.noise_time"}, heading="white", display="kHz",
+        help="equivalent rms of white noise over the longest wait (else one gate)"),
+    Derived("noise.static", dephasing.static_noise, {
+        "nuclear": Input("noise.nuclear", unless=_MEASURED), "barrier": Input("noise.barrier", unless=_MEASURED),
+        "magnet": Input("noise.magnet", unless=_MEASURED), "measured_t2_star": optional(_MEASURED),
+        "drift": "noise.drift", "calibration": "noise.calibration", "clock": "noise.clock", "loose": "noise.loose"},
+        shown=False),
+    Derived("noise.free_flicker", dephasing.free_flicker, {
+        "amplitude": Input("noise.charge_amplitude", unless=_MEASURED), "measured_t2_star": optional(_MEASURED)},
+        shown=False),
+    Derived("noise.free_white", dephasing.free_white, {
+        "density": "noise.white_density", "measured_t2_star": optional(_MEASURED)}, shown=False),
+    Derived("noise.total", dephasing.total_noise, {
+        "static": "noise.static", "amplitude": "noise.free_flicker", "density": "noise.free_white",
+        "lowest": "calibration.lowest", "time": "workload.noise_time"}, heading="noise", display="kHz",
+        help="root-sum-square of all noise; a measured T2* stands for what it contains"),
+    Derived("noise.unexplained", dephasing.unexplained_noise, {
+        "measured": "qubit.t2_star", "nuclear": "noise.nuclear", "barrier": "noise.barrier", "magnet": "noise.magnet",
+        "amplitude": "noise.charge_amplitude", "density": "noise.white_density", "lowest": "calibration.lowest"},
+        heading="unexpl.", display="kHz", unknown=_NO_T2_STAR,
+        help="what the model leaves unexplained of a measured T2*"),
+    Derived("noise.allowed_share", noise.allowed_share, {
+        "source_share": "workload.source_share", "allowed_noise": "coherence.allowed_noise"}, shown=False),
+)
+LIMITS = ()

@@ -1,0 +1,21 @@
+"""The coincidence of Zeeman energy and valley splitting, where relaxation is fastest."""
+
+from __future__ import annotations
+
+from planner.switches import HAS_VALLEYS
+from planner.declare import Compare, Derived, Limit
+from planner.kinds import ENERGY
+from planner.physics import thermal
+
+DERIVEDS = (
+    Derived("valley.distance", thermal.valley_distance, {
+        "energy": "larmor.energy", "valley_splitting": "qubit.valley_splitting"}, only=HAS_VALLEYS,
+        off="the host has no valleys", heading="valley gap", display="ueV",
+        help="distance of Zeeman energy and valley splitting"),
+)
+
+LIMITS = (
+    Limit("valley", "Zeeman energy and valley splitting keep their distance",
+          (Compare("valley.distance", "workload.valley_window", ENERGY),), asked=HAS_VALLEYS,
+          not_asked="the host has no valleys", gap="gap {allowed} of {expected}"),
+)

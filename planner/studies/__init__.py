@@ -1,0 +1,1 @@
+"""Pure (plan) -> answer, all through the one evaluation."""

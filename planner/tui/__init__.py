@@ -1,0 +1,1 @@
+"""The terminal editor. Textual is imported here and nowhere else."""

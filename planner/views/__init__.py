@@ -1,0 +1,1 @@
+"""Pure (plan, evaluation, answer) -> rows of text. Every label, number and verdict is phrased here once."""
