@@ -66,6 +66,12 @@ def test_a_list_on_one_line_can_be_replaced() -> None:
     assert changed(Change(("qubit", 1, "g"), 2.5)) == PLAN.replace("[2.0, 2.0, 1.9]", "2.5")
 
 
+def test_quotes_at_the_end_of_a_value_belong_to_it() -> None:
+    text = "\n".join(['a = """q""""" # "', "b = '''q''''' # '", r'c = "\"#" # "'])
+    edits = [Change((key,), 1) for key in "abc"]
+    assert changed(*edits, text=text) == "\n".join(['a = 1 # "', "b = 1 # '", 'c = 1 # "'])
+
+
 def test_a_removed_key_takes_its_line_along() -> None:
     assert changed(Change(("device",), None)) == PLAN.replace('device = "D7"   # second of the wafer\n', "")
     assert changed(Change(("title",), None), Change(("pair", "name"), None)) == PLAN
@@ -98,6 +104,12 @@ def test_a_new_table_goes_behind_its_predecessor_and_leaves_comments_where_they_
     text = PLAN.replace("# clocks\n[clock]\n\n", "# rows\n\n")
     expected = text.replace("'driven'\n", "'driven'\n\n[clock]\naging = 1\n")
     assert changed(Change(("clock", "aging"), 1), text=text) == expected
+
+
+def test_comments_that_touch_the_next_header_stay_with_it() -> None:
+    text = "format = 1\n# about the clocks\n[clock]\n"
+    expected = "format = 1\n\n[magnet]\nfield = 2\n# about the clocks\n[clock]\n"
+    assert changed(Change(("magnet", "field"), 2), text=text) == expected
 
 
 def test_new_tables_in_an_unknown_and_a_known_place() -> None:
@@ -169,6 +181,7 @@ def test_what_cannot_be_changed_alone_is_refused(text: str, edit: Edit, message:
     "edits",
     [
         [Change(("qubit", 0, "g"), 1), RemoveRow("qubit", 0)],
+        [Change(("qubit", 1, "note"), "behind its last line"), RemoveRow("qubit", 1)],
         [Change(("format",), 1), Change(("format",), 2)],
         [RemoveRow("qubit", 0), RemoveRow("qubit", 0)],
     ],

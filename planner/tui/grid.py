@@ -154,7 +154,8 @@ class Grid(ScrollView, can_focus=True, inherit_bindings=False):
     def on_key(self, event: events.Key) -> None:
         """Takes a key here at once, not through bindings, so that keys sent in one burst keep their order."""
         draft = self._draft
-        if self._take_typing_key(event, draft) if draft else self._take_resting_key(event):
+        taken = self._take_resting_key(event) if draft is None else self._take_typing_key(event, draft)
+        if taken:
             event.stop()
             event.prevent_default()
 

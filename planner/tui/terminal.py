@@ -70,8 +70,8 @@ async def _drained(node: MessagePump) -> None:
         await handled.wait()
 
 
-def driver_class() -> type[Driver] | None:
-    """A driver for `App(driver_class=...)` that survives bad input and hands keys on one by one; None: Textual's own.
+def driver_class() -> type[Driver]:
+    """A driver for `App(driver_class=...)` that survives bad input and hands keys on one by one.
 
     Textual queues a key while the message that answers the one before is still on its way up. Keys that come in
     one packet (a slow line, a fast typist) would then reach a widget that should have lost the keyboard by now,
@@ -80,8 +80,7 @@ def driver_class() -> type[Driver] | None:
     from textual import events
     from textual.drivers import linux_driver
 
-    if not _make_input_tolerant():
-        return None
+    _make_input_tolerant()
 
     class OrderedDriver(linux_driver.LinuxDriver):
         def process_message(self, message: Message) -> None:
@@ -108,19 +107,18 @@ def inner_names_known() -> bool:
     return hasattr(linux_driver, "getincrementaldecoder") and hasattr(XTermParser, "_parse_extended_key")
 
 
-def _make_input_tolerant() -> bool:
+def _make_input_tolerant() -> None:
     """A byte that is not UTF-8 becomes U+FFFD, a key code beyond Unicode no key. Without this both end the app."""
     from textual._xterm_parser import XTermParser
     from textual.drivers import linux_driver
 
     if not inner_names_known():
-        return False
+        return
     decoder = partial(codecs.getincrementaldecoder("utf-8"), errors="replace")
     vars(linux_driver)["getincrementaldecoder"] = lambda _encoding: decoder
     parse = XTermParser._parse_extended_key
     if parse.__module__ != __name__:
         XTermParser._parse_extended_key = _tolerant(parse)  # type: ignore[assignment]
-    return True
 
 
 def _tolerant(parse: Callable[[Any, str], list[Key] | None]) -> Callable[[Any, str], list[Key] | None]:
