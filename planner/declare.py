@@ -220,7 +220,7 @@ class Derived:
     A key that is also a given's is the value found for it where the plan is silent. `shown` is False for steps on the way
     that no surface lists; `only` is the switch without which there is no such result
     (for the reason `off`), `trailing` the shape of one row's value. `heading` is the short name in grids,
-    `display` the unit it is shown in ("" lets the size of the number choose).
+    `display` the unit it is shown in ("" lets the size of the number choose), `digits` the significant digits shown.
     """
 
     key: str
@@ -236,6 +236,7 @@ class Derived:
     trailing: tuple[int, ...] = ()
     heading: str = ""
     display: str = ""
+    digits: int = 3
 
     @property
     def kind(self) -> Kind:
@@ -253,7 +254,7 @@ class Compare:
     """One comparison inside a limit: the keys of what is allowed and what is expected, and when it is made.
 
     `kind` is that of both in reports. `when` is a switch, `only_with` are givens without which a row is not compared;
-    `what` says in a few words what is compared, for limits with more than one comparison.
+    `what` says in a few words what is compared, for limits with more than one comparison; `gap` phrases how both stand.
     """
 
     allowed: str
@@ -262,6 +263,7 @@ class Compare:
     when: Switch | None = None
     only_with: tuple[str, ...] = ()
     what: str = ""
+    gap: str = "{expected} of {allowed} {unit} allowed"
 
 
 @dataclass(frozen=True, slots=True)
@@ -269,8 +271,7 @@ class Limit:
     """The bound on a result, which makes the margin of the same name; of several comparisons the worst counts.
 
     `asked` is the switch that must be on for the margin to be asked, `not_asked` the reason while it is off. `tight_counts`
-    is False for a bound that is met or not, never tight. `gap` phrases how allowed and expected stand: a format with
-    {allowed} and {expected} as texts with units.
+    is False for a bound that is met or not, never tight.
     """
 
     name: str
@@ -280,7 +281,6 @@ class Limit:
     asked: Switch | None = None
     not_asked: str = ""
     tight_counts: bool = True
-    gap: str = "{expected} of {allowed} allowed"
 
 
 class Chapter:

@@ -384,3 +384,31 @@ def number(quantity: Quantity) -> float:
     """The SI value of a quantity of one component."""
     assert isinstance(quantity.value, float | int)
     return float(quantity.value)
+
+
+def unit_shown(plan: Plan, address: Address) -> str:
+    """The unit that the cell of a given shows, and that a bare number typed there gets; "" where it has none."""
+    kind = address.given.kind
+    value = resolved(plan, address).value
+    if isinstance(value, Quantity):
+        return value.unit
+    return kind.first_unit if kind is not None else ""
+
+
+def edited(plan: Plan, address: Address, text: str, *, assume: str = "") -> Plan:
+    """The plan with a given as typed, or without it where the text is blank. Raises GivenError with what is wrong.
+
+    `assume` is the unit of a bare number. A plan without problems stays one without.
+    """
+    given = address.given
+    if text.strip():
+        changed = replaced(plan, address, read_value(given, text.strip(), assume=assume))
+    elif given.missing is Missing.REQUIRED and address.table != "all_qubits":
+        raise GivenError(f"{address.field} is required: type {given.help.split(';')[0]}, as '{given.example}'")
+    else:
+        changed = replaced(plan, address, None)
+    before = set(problems(plan))
+    for problem in problems(changed):
+        if problem not in before:
+            raise GivenError(f"{problem.key}: {problem.sentence}")
+    return changed

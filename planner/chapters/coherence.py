@@ -82,5 +82,5 @@ LIMITS = (
     Limit("gate", "the error of one gate stays within what is allowed",
           (Compare("workload.allowed_gate_error", "coherence.error_per_gate", FRACTION),)),
     Limit("sequence", "the gates within reach cover the target circuit",
-          (Compare("coherence.reachable_gates", "workload.gates", NUMBER),), gap="{allowed} gates within reach of {expected}"),
+          (Compare("coherence.reachable_gates", "workload.gates", NUMBER, gap="{allowed} gates within reach of {expected}"),)),
 )

@@ -18,7 +18,7 @@ DERIVEDS = (
     Derived("larmor.response", zeeman.field_response, {
         "g_tensor": "larmor.tensor", "precession_vector": "larmor.precession"}, shown=False, trailing=(3,),
         unknown=Unknown("the field at the dot is zero")),
-    Derived("larmor.field", zeeman.field_size, {"field_at_dot": "larmor.field_at_dot"}, heading="field", display="mT",
+    Derived("larmor.field", zeeman.field_size, {"field_at_dot": "larmor.field_at_dot"}, heading="field", display="mT", digits=5,
             help="size of the field at the dot, local field included"),
     Derived("larmor.g", zeeman.effective_g, {"precession_vector": "larmor.precession", "field_size": "larmor.field"},
             heading="g", unknown=Unknown("the field at the dot is zero"), help="effective g along the field at the dot"),
@@ -27,7 +27,7 @@ DERIVEDS = (
         heading="axis", unknown=Unknown("a hole with one g value has no known axis: type three principal values", "qubit.g"),
         help="share of the quantisation axis along the principal axis of the largest g (c3 for a scalar g)"),
     Derived("larmor.frequency", zeeman.larmor_frequency, {"g": "larmor.g", "field": "larmor.field"}, heading="frequency",
-            display="GHz", help="Larmor frequency"),
+            display="GHz", digits=5, help="Larmor frequency"),
     Derived("larmor.energy", zeeman.zeeman_energy, {"frequency": "larmor.frequency"}, heading="Zeeman", display="ueV",
             help="Zeeman energy"),
     Derived("larmor.field_slope", zeeman.field_slope, {"field_response": "larmor.response", **_DIRECTION},

@@ -95,8 +95,8 @@ DERIVEDS = (
 
 LIMITS = (
     Limit("rating", "the set field stays within the magnet's rating in the direction used",
-          (Compare("magnet.rating", "magnet.field", FIELD),), per=Per.PLAN, tight_counts=False,
-          gap="{expected} set of {allowed} rated"),
+          (Compare("magnet.rating", "magnet.field", FIELD, gap="{expected} of {allowed} {unit} rated"),), per=Per.PLAN,
+          tight_counts=False),
     Limit("drift", "what the magnet drifts between two calibrations stays within one source's share of the allowed noise",
           (Compare("noise.allowed_share", "noise.drift", FREQUENCY),)),
     Limit("field-noise", "the magnet's field noise stays within one source's share of the allowed noise",

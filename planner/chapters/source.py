@@ -36,7 +36,7 @@ class Source(Chapter):
 
 DERIVEDS = (
     Derived("source.lo", tones.local_oscillator, {
-        "frequency": "larmor.frequency", "in_use": word("qubit.role", "use"), "half_width": "source.if_half_width"}, per=Per.PLAN,
+        "frequency": "larmor.frequency", "in_use": word("qubit.role", "use"), "half_width": "source.if_half_width"}, per=Per.PLAN, digits=5,
         help="local oscillator nearest to the middle of the qubits that stays clear of them, with all images"),
     Derived("source.band_distance", tones.band_distance, {
         "frequency": "larmor.frequency", "low": "source.low", "high": "source.high"}, shown=False),
@@ -46,5 +46,6 @@ DERIVEDS = (
 
 LIMITS = (
     Limit("band", "every line lies inside the source's band, a guard and its search window away from the edges",
-          (Compare("source.band_distance", "source.band_need", FREQUENCY),), gap="{allowed} from the edge, {expected} wanted"),
+          (Compare("source.band_distance", "source.band_need", FREQUENCY,
+                   gap="{allowed} {unit} inside the band, {expected} wanted"),)),
 )

@@ -24,10 +24,9 @@ DERIVEDS = (
 LIMITS = (
     Limit("readout", "the spins can be told apart at the electron temperature, and do not relax first",
           (Compare("workload.blockade_window", "thermal.blockade_need", ENERGY, when=PARITY,
-                   what="blockade window against 5 k T"),
+                   what="blockade window against 5 k T", gap="window {allowed} {unit}, {expected} needed"),
            Compare("workload.allowed_readout_error", "thermal.readout_error", FRACTION, when=ENERGY_SELECTIVE,
                    what="thermal error"),
            Compare("workload.allowed_readout_error", "thermal.relaxation", FRACTION,
-                   only_with=("workload.readout_time", "qubit.t1"), what="relaxation during readout")),
-          gap="{allowed} against {expected}"),
+                   only_with=("workload.readout_time", "qubit.t1"), what="relaxation during readout"))),
 )

@@ -16,6 +16,6 @@ DERIVEDS = (
 
 LIMITS = (
     Limit("valley", "Zeeman energy and valley splitting keep their distance",
-          (Compare("valley.distance", "workload.valley_window", ENERGY),), asked=HAS_VALLEYS,
-          not_asked="the host has no valleys", gap="gap {allowed} of {expected}"),
+          (Compare("valley.distance", "workload.valley_window", ENERGY, gap="gap {allowed} of {expected} {unit}"),),
+          asked=HAS_VALLEYS, not_asked="the host has no valleys"),
 )

@@ -24,7 +24,7 @@ class Tone(Enum):
 
 @dataclass(frozen=True, slots=True)
 class Cell:
-    """One cell. `key` names the given, result or margin it shows (""), `unit` the unit an edit without one gets."""
+    """One cell. `key` names the given, result or margin it shows ("" none), `edit` the text that Enter starts from."""
 
     text: str
     tone: Tone = Tone.PLAIN

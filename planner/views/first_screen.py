@@ -1,0 +1,43 @@
+"""The first screen as lines of text: what the editor opens with, and what it prints where there is no terminal."""
+
+from __future__ import annotations
+
+from planner.evaluate import Evaluation
+from planner.studies.typenext import TypeNext
+from planner.views.rows import counts, device_line, field_line, headline, passed_line
+from planner.views.table import Table
+from planner.views.tables import margin_table, qubit_table
+
+FIRST_COLUMNS = 7  # name, five results, the worst margin
+
+
+def head_lines(evaluation: Evaluation, following: TypeNext | None, state: str, width: int) -> list[str]:
+    """Device, field and state; the counts; the one sentence that matters most."""
+    plan = evaluation.plan
+    parts = [device_line(plan), field_line(plan), passed_line(plan)]
+    room = max(2, (width - len(state) - sum(map(len, parts))) // len(parts))
+    first = (" " * min(room, 6)).join(parts)
+    return [f"{first}{state:>{max(0, width - len(first))}}"[:max(width, len(first))], counts(evaluation),
+            headline(evaluation, following)]
+
+
+def first_screen(evaluation: Evaluation, following: TypeNext | None, width: int = 80) -> list[str]:
+    """Head, qubits with their first results, and the margins."""
+    qubits = qubit_table(evaluation)
+    narrow = Table(qubits.columns[:FIRST_COLUMNS], tuple(row[:FIRST_COLUMNS] for row in qubits.rows))
+    lines = [*head_lines(evaluation, following, "", width), "", *text_lines(narrow), "",
+             *text_lines(margin_table(evaluation, width))]
+    return [line.rstrip() for line in lines]
+
+
+def text_lines(table: Table) -> list[str]:
+    """A table as plain lines, headings first, columns two blanks apart."""
+    height = max((len(column.heading) for column in table.columns), default=0)
+    heads = [[column.heading[line] if line < len(column.heading) else "" for column in table.columns] for line in range(height)]
+    return [_line(table, texts) for texts in heads] + [_line(table, [cell.text for cell in row]) for row in table.rows]
+
+
+def _line(table: Table, texts: list[str]) -> str:
+    padded = (f"{text:>{column.width}}" if column.right else f"{text:<{column.width}}"
+              for text, column in zip(texts, table.columns, strict=True))
+    return "  ".join(padded).rstrip()

@@ -1,0 +1,174 @@
+"""The grids: qubits with results and givens in one row, a chapter's givens, the margins."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+from planner.declare import Derived, Missing, Per
+from planner.evaluate import Evaluation
+from planner.graph import givens
+from planner.kinds import Quantity, clean
+from planner.margins import CLEAR, SHORT, TIGHT, UNKNOWN, VERDICTS
+from planner.plan import Address, Plan, key_of, resolved, table_givens, unit_shown
+from planner.views.numbers import margin_text, with_unit, without_origin
+from planner.views.rows import gap, result_text, until_word
+from planner.views.table import Cell, Column, Table, Tone
+
+FIRST_RESULTS = ("larmor.frequency", "larmor.spacing", "noise.total", "coherence.allowed_noise", "coherence.t2_star")
+VERDICT_TONES = {SHORT: Tone.SHORT, UNKNOWN: Tone.UNKNOWN, TIGHT: Tone.TIGHT, CLEAR: Tone.PLAIN}
+PANES = ("margins", "magnet", "clock", "source", "chip", "model", "workload", "calibration", "all_qubits", "")
+PANE_TITLES = {"": "plan", "all_qubits": "all qubits"}
+
+
+def pane_title(pane: str) -> str:
+    """Title of a pane."""
+    return PANE_TITLES.get(pane, pane)
+
+
+def qubit_table(evaluation: Evaluation) -> Table:
+    """One row a qubit of the plan: name, first results, its worst margin, its givens, the other results."""
+    plan = evaluation.plan
+    first = [evaluation.derived(key) for key in FIRST_RESULTS]
+    others = [derived for derived in evaluation.graph.order if _listed(derived) and derived.key not in FIRST_RESULTS]
+    fields = [name for name in table_givens("qubit") if name != "name"]
+    columns = (Column(("", ""), _name_width(plan)), *map(_result_column, first), Column(("worst of this qubit", ""), 21),
+               *(_given_column(plan, name) for name in fields), *map(_result_column, others))
+    worst = _worst_by_row(evaluation)
+    rows = []
+    for index in range(len(plan.qubit)):
+        row = evaluation.rows.index(index) if index in evaluation.rows else None
+        rows.append((
+            _given_cell(plan, Address("qubit", index, "name")),
+            *(_result_cell(evaluation, derived, row) for derived in first),
+            worst.get(row, Cell("spare" if row is not None else "dead", Tone.FAINT)),
+            *(_given_cell(plan, Address("qubit", index, name)) for name in fields),
+            *(_result_cell(evaluation, derived, row) for derived in others),
+        ))
+    return Table(columns, tuple(rows), fixed=1)
+
+
+def pane_table(evaluation: Evaluation, pane: str, width: int) -> Table:
+    """The givens of a chapter, two beside each other where they fit, each with its value and origin."""
+    if pane == "margins":
+        return margin_table(evaluation, width)
+    plan = evaluation.plan
+    entries = [Address(pane, None, name) for name in table_givens(pane)]
+    beside = 2 if width >= 78 else 1
+    room = (width - 1) // beside - 3
+    label = max(len(name) for name in table_givens(pane))
+    value = max(12, min(40, (room - label) * 3 // 5))
+    half = (Column((), label), Column((), value), Column((), max(6, room - label - value)))
+    height = -(-len(entries) // beside)
+    rows = tuple(tuple(cell for place in range(row, len(entries), height) for cell in _given_cells(evaluation, entries[place]))
+                 for row in range(height))
+    blank = (Cell(""),) * 3
+    return Table(half * beside, tuple(row if len(row) == 3 * beside else row + blank for row in rows))
+
+
+def margin_table(evaluation: Evaluation, width: int) -> Table:
+    """The asked margins, worst first, then those not asked."""
+    name = max(len(limit.name) for limit in evaluation.graph.limits)
+    row_width = max([len(qubit) for qubit in evaluation.names if len(qubit) < 12] or [4])
+    text = max(10, width - name - row_width - 7 - 8 - 8 - 6)
+    columns = (Column(("margin",), name), Column(("of",), row_width), Column(("",), 7, right=True), Column(("",), 8),
+               Column(("until",), 8), Column(("",), text))
+    rows = [
+        (Cell(margin.name, key=f"margin.{margin.name}"), Cell(margin.row, key=f"margin.{margin.name}"),
+         Cell(margin_text(margin.value), key=f"margin.{margin.name}"),
+         Cell(margin.verdict, VERDICT_TONES[margin.code], key=f"margin.{margin.name}"),
+         Cell(until_word(margin), Tone.FAINT), Cell(gap(evaluation, margin)))
+        for margin in evaluation.ranked
+    ]
+    rows += [(Cell(margin, Tone.FAINT, key=f"margin.{margin}"), Cell(""), Cell(""), Cell(""), Cell(""),
+              Cell(f"not asked: {reason}", Tone.FAINT)) for margin, reason in evaluation.not_asked.items()]
+    return Table(columns, tuple(rows))
+
+
+def given_text(plan: Plan, address: Address) -> str:
+    """The value of a given as a cell shows it: without its origin, or the unit of an empty one."""
+    value = resolved(plan, address).value
+    if isinstance(value, Quantity):
+        return without_origin(value)
+    return value if value is not None else unit_shown(plan, address)
+
+
+def found_text(evaluation: Evaluation, address: Address) -> str:
+    """What was found from results for a given that nobody typed: one value, or the range over the qubits."""
+    key = f"{address.table}.{address.field}"
+    if key not in evaluation.columns or givens()[key].missing is not Missing.FOUND:
+        return ""
+    derived = evaluation.derived(key)
+    values = [float(value) for value in evaluation.columns[key].base() if value == value]
+    ends = [with_unit(derived.kind, value, derived.display, derived.digits) for value in (min(values), max(values))] if values else []
+    return " to ".join(dict.fromkeys(ends))
+
+
+def _listed(derived: Derived) -> bool:
+    return derived.shown and derived.per is Per.QUBIT and derived.key not in givens()
+
+
+def _name_width(plan: Plan) -> int:
+    return min(16, max(4, *(len(str(row.name)) for row in plan.qubit)))
+
+
+def _result_column(derived: Derived) -> Column:
+    heading = derived.heading or derived.key.rpartition(".")[2]
+    return Column((heading, derived.display), max(len(heading), len(derived.display), 8 if derived.display else 9), right=True)
+
+
+def _given_column(plan: Plan, name: str) -> Column:
+    texts = [given_text(plan, Address("qubit", row, name)) for row in range(len(plan.qubit))]
+    return Column((name, ""), max(len(name), min(24, max(map(len, texts)))), right=False)
+
+
+def _result_cell(evaluation: Evaluation, derived: Derived, row: int | None) -> Cell:
+    if row is None:
+        return Cell("")
+    text = result_text(evaluation, derived.key, row)
+    tone = Tone.UNKNOWN if text == "?" else Tone.PLAIN
+    return Cell(text, tone, key=f"{derived.key}@{evaluation.names[row]}")
+
+
+def _worst_by_row(evaluation: Evaluation) -> dict[int | None, Cell]:
+    """The worst margin of each qubit in use."""
+    found: dict[int | None, Cell] = {}
+    for position, row in enumerate(evaluation.used):
+        ranked = [(int(margin.codes[position]), float(margin.margins[position]), margin.name)
+                  for margin in evaluation.margins if margin.limit.per is Per.QUBIT]
+        code, value, name = min(ranked, key=lambda entry: (entry[0], entry[1] if entry[1] == entry[1] else 0.0))
+        number = margin_text(value if value == value else None)
+        found[row] = Cell(f"{name} {number} {VERDICTS[code]}", VERDICT_TONES[code], key=f"margin.{name}@{evaluation.names[row]}")
+    return found
+
+
+def _given_cells(evaluation: Evaluation, address: Address) -> Iterator[Cell]:
+    plan = evaluation.plan
+    yield Cell(address.field, Tone.FAINT)
+    cell = _given_cell(plan, address)
+    found = found_text(evaluation, address) if resolved(plan, address).value is None else ""
+    if found:
+        cell = Cell(found, Tone.ASSUMED, cell.key, editable=True, edit=" ")
+    yield cell
+    yield Cell(origin_text(plan, address), Tone.FAINT)
+
+
+def origin_text(plan: Plan, address: Address) -> str:
+    """Where the value of a given comes from, or what its absence means."""
+    value, source = resolved(plan, address)
+    if source == "typed":
+        return clean(value.origin) if isinstance(value, Quantity) else ""
+    if source:
+        return {"all_qubits": "of all qubits", "material": "of the material", "default": "default"}[source]
+    missing = address.given.missing
+    return {Missing.OFF: "off", Missing.FOUND: "found", Missing.REQUIRED: "required"}.get(missing, "unknown")
+
+
+def _given_cell(plan: Plan, address: Address) -> Cell:
+    value, source = resolved(plan, address)
+    typed = source == "typed"
+    tone = Tone.PLAIN if typed else Tone.ASSUMED
+    if isinstance(value, Quantity) and typed and value.origin_class == "guess":
+        tone = Tone.GUESS
+    edit = (value.text if isinstance(value, Quantity) else value) if typed and value is not None else " "
+    return Cell(clean(given_text(plan, address)), tone, key_of(plan, address), editable=True, edit=edit)
+
