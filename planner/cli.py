@@ -48,10 +48,14 @@ def edit(options: argparse.Namespace) -> int:
     if document is None:
         return BAD_INPUT
     if terminal.usable():
+        if options.with_:
+            print("--with is evaluated and never kept: use it with check or report, or type the value in the editor",
+                  file=sys.stderr)
+            return BAD_INPUT
         terminal.set_escape_delay()
         from planner.tui.app import run
 
-        return run(document, ascii_only=options.ascii or terminal.plain_ascii(), mouse=options.mouse)
+        return run(document, mouse=options.mouse)
     from planner.evaluate import evaluate
     from planner.studies.typenext import type_next
     from planner.views.first_screen import first_screen
@@ -168,7 +172,6 @@ def _edit_parser(commands: argparse._SubParsersAction[argparse.ArgumentParser]) 
     one = _command(commands, "edit", edit, "open a plan in the editor (the command may be left out)",
                    "planner plans/sq6-03-drafted.toml", "Without a terminal it prints what the first screen shows.")
     one.add_argument("plan", metavar="PLAN", help="plan file")
-    one.add_argument("--ascii", action="store_true", help="draw with plain ASCII characters only")
     one.add_argument("--mouse", action="store_true", help="let the program see the mouse")
 
 

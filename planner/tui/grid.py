@@ -115,17 +115,34 @@ class Grid(ScrollView, can_focus=True, inherit_bindings=False):
         """The key of the cell under the cursor, "" where there is none."""
         return self._cell(*self._cursor).key
 
-    def show(self, table: Table) -> None:
-        """Shows another table; the cursor stays on its key where that still exists. Answer `Accepted` first."""
+    @property
+    def cursor_row(self) -> int:
+        """The row of the cursor, from 0."""
+        return self._cursor[0]
+
+    def show(self, table: Table, *, title: str | None = None) -> None:
+        """Shows another table; the cursor stays on its key where that still exists. Answer `Accepted` first.
+
+        Another `title` stands for another subject: the cursor then begins at its first cell.
+        """
         key, before = self.cursor_key, self._table
         self._table = table
-        if (before.columns, before.fixed, len(before.rows)) == (table.columns, table.fixed, len(table.rows)):
+        if title is not None and title != self._title:
+            self._begin(title)
+        elif (before.columns, before.fixed, len(before.rows)) == (table.columns, table.fixed, len(table.rows)):
             self._repaint_differences(before)
         else:
             self._left = self._left if before.columns == table.columns else 0
             self._measure()
             self.refresh()
         self._follow(key)
+
+    def _begin(self, title: str) -> None:
+        self._title, self._left = title, 0
+        self._draft = None
+        self._cursor = self._first_place()
+        self._measure()
+        self.refresh()
 
     def move_to(self, key: str) -> bool:
         """Puts the cursor on the cell with this key, an editable one first; False where no cell has it."""
@@ -256,14 +273,19 @@ class Grid(ScrollView, can_focus=True, inherit_bindings=False):
         places = {
             "up": (row - 1, column),
             "down": (row + 1, column),
-            "left": (row, column - 1),
-            "right": (row, column + 1),
-            "home": (row, 0),
-            "end": (row, len(self._table.columns) - 1),
+            "left": (row, self._column_with_key(range(column - 1, -1, -1))),
+            "right": (row, self._column_with_key(range(column + 1, len(self._table.columns)))),
+            "home": (row, self._column_with_key(range(len(self._table.columns)))),
+            "end": (row, self._column_with_key(range(len(self._table.columns) - 1, -1, -1))),
             "pageup": (row - page, column),
             "pagedown": (row + page, column),
         }
         return places.get(key)
+
+    def _column_with_key(self, columns: range) -> int:
+        """The first of these columns whose cell in the cursor's row shows something with a key; else the cursor's own."""
+        row, column = self._cursor
+        return next((other for other in columns if self._cell(row, other).key), column)
 
     def _go_to(self, row: int, column: int) -> None:
         rows, columns = len(self._table.rows), len(self._table.columns)

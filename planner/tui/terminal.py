@@ -14,7 +14,7 @@ import signal
 import sys
 import termios
 import threading
-from collections.abc import Callable
+from collections.abc import Callable, Iterable, Iterator
 from contextlib import suppress
 from functools import partial
 from types import FrameType
@@ -27,6 +27,7 @@ if TYPE_CHECKING:
     from textual.message import Message
     from textual.message_pump import MessagePump
 
+ESCAPE = "\x1b"
 ESCAPE_DELAY_MS = 400  # parts of one key's sequence come up to this far apart over a slow line
 KEY_PATIENCE_S = 1.0  # how long the next key waits for the one before it
 LEAVING = (  # end a half-written sequence; paste marks, kitty keys, mouse, focus reports, alternate screen off
@@ -104,7 +105,8 @@ def inner_names_known() -> bool:
     from textual._xterm_parser import XTermParser
     from textual.drivers import linux_driver
 
-    return hasattr(linux_driver, "getincrementaldecoder") and hasattr(XTermParser, "_parse_extended_key")
+    names = ("_parse_extended_key", "_sequence_to_key_events")
+    return hasattr(linux_driver, "getincrementaldecoder") and all(hasattr(XTermParser, name) for name in names)
 
 
 def _make_input_tolerant() -> None:
@@ -119,6 +121,23 @@ def _make_input_tolerant() -> None:
     parse = XTermParser._parse_extended_key
     if parse.__module__ != __name__:
         XTermParser._parse_extended_key = _tolerant(parse)  # type: ignore[assignment]
+        XTermParser._sequence_to_key_events = _escape_first(XTermParser._sequence_to_key_events)  # type: ignore[assignment]
+
+
+def _escape_first(keys_of: Callable[..., Iterable[Key]]) -> Callable[..., Iterable[Key]]:
+    """Reads Escape and a key struck soon after it as these two keys, not as the key with Alt, which nothing here uses.
+
+    Escape then a bracket, O, P or underscore begins a sequence of the terminal's own and is left alone.
+    """
+    from textual.events import Key
+
+    def keys(parser: Any, sequence: str, alt: bool = False) -> Iterator[Key]:
+        if len(sequence) == 2 and sequence[0] == ESCAPE and sequence[1] not in "[]OP_":
+            yield Key("escape", ESCAPE)
+            sequence = sequence[1]
+        yield from keys_of(parser, sequence, alt)
+
+    return keys
 
 
 def _tolerant(parse: Callable[[Any, str], list[Key] | None]) -> Callable[[Any, str], list[Key] | None]:

@@ -27,7 +27,7 @@ def first_screen(evaluation: Evaluation, following: TypeNext | None, width: int 
     narrow = Table(qubits.columns[:FIRST_COLUMNS], tuple(row[:FIRST_COLUMNS] for row in qubits.rows))
     lines = [*head_lines(evaluation, following, "", width), "", *text_lines(narrow), "",
              *text_lines(margin_table(evaluation, width))]
-    return [line.rstrip() for line in lines]
+    return [line[:width].rstrip() for line in lines]
 
 
 def text_lines(table: Table) -> list[str]:

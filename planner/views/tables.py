@@ -17,6 +17,8 @@ from planner.views.table import Cell, Column, Table, Tone
 FIRST_RESULTS = ("larmor.frequency", "larmor.spacing", "noise.total", "coherence.allowed_noise", "coherence.t2_star")
 VERDICT_TONES = {SHORT: Tone.SHORT, UNKNOWN: Tone.UNKNOWN, TIGHT: Tone.TIGHT, CLEAR: Tone.PLAIN}
 PANES = ("margins", "magnet", "clock", "source", "chip", "model", "workload", "calibration", "all_qubits", "")
+TWO_BESIDE = 78  # columns from which two givens stand beside each other
+LONGEST_VALUE = 22
 PANE_TITLES = {"": "plan", "all_qubits": "all qubits"}
 
 
@@ -51,18 +53,24 @@ def pane_table(evaluation: Evaluation, pane: str, width: int) -> Table:
     """The givens of a chapter, two beside each other where they fit, each with its value and origin."""
     if pane == "margins":
         return margin_table(evaluation, width)
-    plan = evaluation.plan
-    entries = [Address(pane, None, name) for name in table_givens(pane)]
-    beside = 2 if width >= 78 else 1
-    room = (width - 1) // beside - 3
-    label = max(len(name) for name in table_givens(pane))
-    value = max(12, min(40, (room - label) * 3 // 5))
-    half = (Column((), label), Column((), value), Column((), max(6, room - label - value)))
-    height = -(-len(entries) // beside)
-    rows = tuple(tuple(cell for place in range(row, len(entries), height) for cell in _given_cells(evaluation, entries[place]))
-                 for row in range(height))
+    names = list(table_givens(pane))
+    height = -(-len(names) // 2) if width >= TWO_BESIDE else len(names)
+    halves = [[_given_cells(evaluation, Address(pane, None, name)) for name in names[start:start + height]]
+              for start in range(0, len(names), height)]
     blank = (Cell(""),) * 3
-    return Table(half * beside, tuple(row if len(row) == 3 * beside else row + blank for row in rows))
+    rows = tuple(tuple(cell for half in halves for cell in (half[row] if row < len(half) else blank)) for row in range(height))
+    return Table(tuple(_half_columns(halves, width)), rows)
+
+
+def _half_columns(halves: list[list[tuple[Cell, ...]]], width: int) -> Iterator[Column]:
+    """Name, value and origin of each half: names whole, values as wide as they are up to a limit, origins what is left."""
+    needs = [[max(len(row[place].text) for row in half) for place in range(3)] for half in halves]
+    values = [min(need[1], LONGEST_VALUE) for need in needs]
+    room = width - 3 * len(halves) - sum(need[0] for need in needs) - sum(values)
+    for place, (need, value) in enumerate(zip(needs, values, strict=True)):
+        origin = max(1, min(need[2], room // (len(halves) - place)))
+        room -= origin
+        yield from (Column((), need[0]), Column((), value), Column((), origin))
 
 
 def margin_table(evaluation: Evaluation, width: int) -> Table:
@@ -141,15 +149,13 @@ def _worst_by_row(evaluation: Evaluation) -> dict[int | None, Cell]:
     return found
 
 
-def _given_cells(evaluation: Evaluation, address: Address) -> Iterator[Cell]:
+def _given_cells(evaluation: Evaluation, address: Address) -> tuple[Cell, ...]:
     plan = evaluation.plan
-    yield Cell(address.field, Tone.FAINT)
     cell = _given_cell(plan, address)
     found = found_text(evaluation, address) if resolved(plan, address).value is None else ""
     if found:
         cell = Cell(found, Tone.ASSUMED, cell.key, editable=True, edit=" ")
-    yield cell
-    yield Cell(origin_text(plan, address), Tone.FAINT)
+    return Cell(address.field, Tone.FAINT), cell, Cell(origin_text(plan, address), Tone.FAINT)
 
 
 def origin_text(plan: Plan, address: Address) -> str:

@@ -1,0 +1,95 @@
+"""A plan being edited: frozen; every accepted edit makes a new session with one more step to undo."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from pathlib import Path
+
+from planner import planfile
+from planner.chapters.qubit import Qubit
+from planner.plan import Address, GivenError, Plan, edited, problems, read_value, unit_shown, with_rows
+from planner.planfile import Document
+
+
+@dataclass(frozen=True, slots=True)
+class Session:
+    """The plan now, the plans before and after it, and the document it was read from or last saved to."""
+
+    document: Document
+    plan: Plan
+    past: tuple[Plan, ...] = ()
+    future: tuple[Plan, ...] = ()
+
+    @property
+    def saved(self) -> bool:
+        """Whether the file holds this plan."""
+        return self.plan == self.document.plan
+
+    @property
+    def path(self) -> Path:
+        """Where the plan is saved."""
+        assert self.document.path is not None
+        return self.document.path
+
+
+def opened(document: Document) -> Session:
+    """A session on a document as it was read."""
+    return Session(document, document.plan)
+
+
+def typed(session: Session, address: Address, text: str) -> Session:
+    """The session after a given was typed; a bare number gets the unit that its cell shows. Raises GivenError."""
+    return changed(session, edited(session.plan, address, text, assume=unit_shown(session.plan, address)))
+
+
+def changed(session: Session, plan: Plan) -> Session:
+    """The session with another plan; the same plan makes no step."""
+    if plan == session.plan:
+        return session
+    return replace(session, plan=plan, past=(*session.past, session.plan), future=())
+
+
+def undone(session: Session) -> Session:
+    """One step back; the same session where there is none."""
+    if not session.past:
+        return session
+    return replace(session, plan=session.past[-1], past=session.past[:-1], future=(session.plan, *session.future))
+
+
+def redone(session: Session) -> Session:
+    """One step forward again; the same session where there is none."""
+    if not session.future:
+        return session
+    return replace(session, plan=session.future[0], past=(*session.past, session.plan), future=session.future[1:])
+
+
+def with_qubit(session: Session, name: str, after: int) -> Session:
+    """The session with one more qubit behind row `after`, a copy of it under a new name. Raises GivenError."""
+    rows = session.plan.qubit
+    source = rows[after] if rows else Qubit()
+    row = replace(source, name=read_value(Address("qubit", 0, "name").given, name))
+    return _checked(session, with_rows(session.plan, "qubit", (*rows[:after + 1], row, *rows[after + 1:])))
+
+
+def without_qubit(session: Session, index: int) -> Session:
+    """The session without one row of qubits. Raises GivenError where it is the last in use."""
+    rows = session.plan.qubit
+    return _checked(session, with_rows(session.plan, "qubit", (*rows[:index], *rows[index + 1:])))
+
+
+def free_name(plan: Plan) -> str:
+    """A name for one more qubit: the first of Q1, Q2 ... that is free."""
+    taken = {row.name for row in plan.qubit}
+    return next(name for number in range(1, len(taken) + 2) if (name := f"Q{number}") not in taken)
+
+
+def saved(session: Session, path: Path, *, overwrite: bool = False) -> Session:
+    """The session after writing the plan to `path`. Raises as `planfile.save`."""
+    return replace(session, document=planfile.save(session.document, session.plan, path, overwrite=overwrite))
+
+
+def _checked(session: Session, plan: Plan) -> Session:
+    found = problems(plan)
+    if found:
+        raise GivenError(f"{found[0].key}: {found[0].sentence}")
+    return changed(session, plan)

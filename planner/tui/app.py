@@ -1,0 +1,212 @@
+"""The editor: holds a session, shows its evaluation in grids, and hands keys to the session. It computes nothing."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+
+from textual import events, work
+from textual.app import App, ComposeResult
+from textual.binding import Binding
+from textual.containers import Horizontal
+from textual.widgets import Static
+
+from planner import session as sessions
+from planner.evaluate import Evaluation, evaluate
+from planner.plan import GivenError
+from planner.planfile import Document
+from planner.session import Session
+from planner.studies.typenext import TypeNext, type_next
+from planner.tui import files, terminal
+from planner.tui.actions import ACTIONS
+from planner.tui.foot import Foot
+from planner.tui.grid import Grid
+from planner.tui.head import Head
+from planner.tui.help import Help
+from planner.views.editing import NOT_TYPED, given_at, help_at, typing_line
+from planner.views.first_screen import head_lines
+from planner.views.tables import PANES, margin_table, pane_table, pane_title, qubit_table
+
+WIDE = 120  # columns from which the margins stand beside the other panes
+NARROWEST, LOWEST = 60, 16
+STOPS = ("qubits", *PANES)
+
+
+class Planner(App[None], inherit_bindings=False):
+    """One plan in the editor."""
+
+    CSS_PATH = "planner.tcss"
+    ENABLE_COMMAND_PALETTE = False
+    BINDINGS = [Binding(action.control, f"do('{action.method}')", show=False, priority=True)
+                for action in ACTIONS if action.control]
+
+    def __init__(self, document: Document) -> None:
+        super().__init__(driver_class=terminal.driver_class(), ansi_color=True)
+        self.theme = "ansi-dark"
+        self.session: Session = sessions.opened(document)
+        self.evaluation: Evaluation = evaluate(document.plan)
+        self.following: TypeNext | None = None
+        self.stop = "magnet"
+        self.head, self.foot = Head(), Foot()
+        self.qubits = Grid(qubit_table(self.evaluation), title="qubits", id="qubits")
+        self.pane = Grid(pane_table(self.evaluation, self.stop, 80), title=self.stop, id="pane")
+        self.margins = Grid(margin_table(self.evaluation, 80), title="margins", id="margins")
+
+    def compose(self) -> ComposeResult:
+        """Head, qubits, a pane and the margins, foot; or one line where the window is too small."""
+        yield self.head
+        yield self.qubits
+        yield Horizontal(self.pane, self.margins, id="lower")
+        yield self.foot
+        yield Static("", id="narrow", markup=False)
+
+    def on_mount(self) -> None:
+        """The field is what people look for first."""
+        terminal.install_signal_handlers(self)
+        self.visit("magnet")
+        for note in self.session.document.ignored[:1]:
+            self.foot.say(note, bad=True)
+
+    def on_resize(self, event: events.Resize) -> None:
+        """Another size: other panes beside each other."""
+        small = event.size.width < NARROWEST or event.size.height < LOWEST
+        for part in (self.head, self.qubits, self.query_one("#lower"), self.foot):
+            part.display = not small
+        narrow = self.query_one("#narrow", Static)
+        narrow.display = small
+        narrow.update(f"The window has {event.size.width} columns and {event.size.height} lines: "
+                      f"the planner needs {NARROWEST} and {LOWEST}.")
+        self.arrange()
+
+    # -- showing
+
+    def take(self, session: Session) -> None:
+        """Go on with another session: evaluate its plan once and show what changed."""
+        plan_changed = session.plan is not self.session.plan
+        self.session = session
+        if plan_changed:
+            self.evaluation, self.following = evaluate(session.plan), None
+            self.look_ahead(self.evaluation)
+        self.arrange()
+
+    def arrange(self) -> None:
+        """Show the evaluation in every part that is in view."""
+        width = self.size.width
+        wide = width >= WIDE
+        on_margins = self.stop == "margins"
+        self.margins.display, self.pane.display = wide or on_margins, wide or not on_margins
+        half = width // 2 if wide else width
+        state = "saved" if self.session.saved else "not saved"
+        self.head.show(head_lines(self.evaluation, self.following, state, width))
+        self.qubits.show(qubit_table(self.evaluation))
+        self.qubits.styles.max_height = max(5, self.size.height // 2 - 2)
+        self.margins.show(margin_table(self.evaluation, half))
+        if self.stop in PANES and not on_margins:
+            self.pane.show(pane_table(self.evaluation, self.stop, half), title=pane_title(self.stop))
+
+    @work(thread=True, exclusive=True)
+    def look_ahead(self, evaluation: Evaluation) -> None:
+        """Find what to type next, beside the typing; dropped where the plan has moved on."""
+        following = type_next(evaluation) if evaluation.verdict == "unknown" else None
+        self.call_from_thread(self.look_back, evaluation, following)
+
+    def look_back(self, evaluation: Evaluation, following: TypeNext | None) -> None:
+        """Show what was found, on its line alone."""
+        if evaluation is self.evaluation:
+            self.following = following
+            self.arrange()
+
+    def visit(self, stop: str) -> None:
+        """Go to a pane."""
+        self.stop = stop
+        self.arrange()
+        grid = {"qubits": self.qubits, "margins": self.margins}.get(stop, self.pane)
+        grid.focus(scroll_visible=False)
+        self.foot.say(help_at(self.evaluation, grid.cursor_key))
+
+    # -- keys and what comes of them
+
+    def on_key(self, event: events.Key) -> None:
+        """Keys that no grid takes: Space opens the actions, Tab goes on."""
+        if event.key == "space":
+            self.foot.choose(self.action_do)
+        elif event.key in {"tab", "shift+tab"}:
+            self.go_on(1 if event.key == "tab" else -1)
+
+    def go_on(self, step: int) -> None:
+        """The next pane, or the one before."""
+        self.visit(STOPS[(STOPS.index(self.stop) + step) % len(STOPS)])
+
+    def on_grid_moved(self, message: Grid.Moved) -> None:
+        """The help line follows the cursor."""
+        if message.grid.has_focus:
+            self.foot.say(help_at(self.evaluation, message.key))
+
+    def on_grid_typing(self, message: Grid.Typing) -> None:
+        """Say what is understood while it is typed."""
+        address = given_at(self.evaluation, message.key)
+        if address is not None:
+            line, fine = typing_line(self.evaluation, address, message.text)
+            self.foot.say(line, bad=not fine)
+
+    def on_grid_accepted(self, message: Grid.Accepted) -> None:
+        """Take what was typed, or say what is wrong and keep the text."""
+        address = given_at(self.evaluation, message.key)
+        assert address is not None
+        if not self.attempt(lambda: sessions.typed(self.session, address, message.text), message.grid.accept):
+            message.grid.reject()
+        elif message.step in {"next", "previous"}:
+            self.go_on(1 if message.step == "next" else -1)
+        else:
+            self.foot.say(help_at(self.evaluation, message.grid.cursor_key))
+
+    def on_grid_gave_up(self, message: Grid.GaveUp) -> None:
+        """Back to help."""
+        self.foot.say(help_at(self.evaluation, message.key))
+
+    def on_grid_refused(self) -> None:
+        """Results aren't typed."""
+        self.foot.say(NOT_TYPED)
+
+    def attempt(self, make: Callable[[], Session], before: Callable[[], None] = lambda: None) -> bool:
+        """Go on with the session that `make` returns, or say why it can't be; whether it could."""
+        try:
+            session = make()
+        except GivenError as error:
+            self.foot.say(str(error), bad=True)
+            return False
+        before()
+        self.take(session)
+        return True
+
+    # -- the actions, by their names in the table
+
+    def action_do(self, method: str) -> None:
+        """Do one action of the table."""
+        {"undo": lambda: self.take(sessions.undone(self.session)), "redo": lambda: self.take(sessions.redone(self.session)),
+         "save": lambda: files.save(self), "save_as": lambda: files.save_as(self), "leave": lambda: files.leave(self),
+         "add_qubit": self.add_qubit, "drop_qubit": self.drop_qubit, "margins": lambda: self.visit("margins"),
+         "help": lambda: self.push_screen(Help())}[method]()
+
+    def add_qubit(self) -> None:
+        """Ask for a name and add a qubit below the one under the cursor."""
+        row = self.qubits.cursor_row
+        self.foot.prompt("name of the new qubit", sessions.free_name(self.session.plan), lambda name: self.added(name, row))
+
+    def added(self, name: str, row: int) -> None:
+        """Add the qubit and go to it."""
+        if self.attempt(lambda: sessions.with_qubit(self.session, name, row)):
+            self.visit("qubits")
+            self.qubits.move_to(f"qubit.{name.strip()}.name")
+
+    def drop_qubit(self) -> None:
+        """Remove the qubit under the cursor."""
+        name = self.session.plan.qubit[self.qubits.cursor_row].name
+        if self.attempt(lambda: sessions.without_qubit(self.session, self.qubits.cursor_row)):
+            self.foot.say(f"removed {name}; Space u brings it back")
+
+
+def run(document: Document, *, mouse: bool = False) -> int:
+    """Run the editor until it is left; the exit status."""
+    app = Planner(document)
+    app.run(mouse=mouse)
+    return 1 if app.return_code is None else app.return_code

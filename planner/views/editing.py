@@ -1,0 +1,60 @@
+"""The line below the grids: help on what is under the cursor, what is understood of a text being typed, and what it does."""
+
+from __future__ import annotations
+
+from planner.declare import Form
+from planner.evaluate import Evaluation, evaluate
+from planner.graph import graph
+from planner.kinds import Quantity
+from planner.plan import Address, GivenError, UnknownKey, address_of, edited, resolved, unit_shown
+from planner.views.numbers import understood, without_origin
+from planner.views.rows import headline, margin_line
+from planner.views.words import help_line
+
+NOT_TYPED = "results aren't typed: they follow from the givens"
+REMOVED = "removed"
+
+
+def given_at(evaluation: Evaluation, key: str) -> Address | None:
+    """The given with this key, None for results and margins."""
+    try:
+        return address_of(evaluation.plan, key)
+    except UnknownKey:
+        return None
+
+
+def help_at(evaluation: Evaluation, key: str) -> str:
+    """One line on the given, result or margin under the cursor."""
+    address = given_at(evaluation, key)
+    if address is not None:
+        return help_line(key, address.given)
+    name, _, row = key.partition("@")
+    if name.startswith("margin."):
+        margin = evaluation.margin(name.removeprefix("margin."))
+        limit = next((limit for limit in graph().limits if f"margin.{limit.name}" == name), None)
+        return f"{margin_line(evaluation, margin)}. {margin.limit.meaning}" if margin and not row else limit.meaning if limit else ""
+    derived = next((derived for derived in evaluation.graph.order if derived.key == name), None)
+    if derived is None:
+        return ""
+    reason = evaluation.columns[name].why.get(evaluation.names.index(row)) if row in evaluation.names else None
+    return f"{name}: {derived.help}" + (f". Unknown: {reason}" if reason else "")
+
+
+def typing_line(evaluation: Evaluation, address: Address, text: str) -> tuple[str, bool]:
+    """What is understood of a text being typed and what the worst margin would become, or why it is not accepted.
+
+    The flag tells whether it would be accepted.
+    """
+    unit = unit_shown(evaluation.plan, address)
+    try:
+        plan = edited(evaluation.plan, address, text, assume=unit)
+    except GivenError as error:
+        return str(error), False
+    value = resolved(plan, address).value
+    read = REMOVED if not text.strip() else str(value)
+    if isinstance(value, Quantity) and address.given.kind is not None:
+        read = f"{without_origin(value)} = {understood(address.given.kind, value)}"
+        read = read if text.strip() else f"{REMOVED}: now {read}"
+    elif address.given.form is Form.CHOICE and text.strip():
+        read = f"{value}: {address.given.options[str(value)]}"
+    return f"{read}. Then: {headline(evaluate(plan), None)}", True

@@ -1,0 +1,56 @@
+"""Constants against CODATA 2022 as scipy ships it, and as printed by NIST."""
+
+from __future__ import annotations
+
+from math import pi
+
+import numpy as np
+import pytest
+import scipy.constants as codata  # type: ignore[import-untyped]
+from scipy.special import zeta  # type: ignore[import-untyped]
+
+from planner import constants
+
+
+def value(name: str) -> float:
+    return float(codata.physical_constants[name][0])
+
+
+@pytest.mark.parametrize(("ours", "name"), [
+    (constants.PLANCK, "Planck constant"),
+    (constants.REDUCED_PLANCK, "reduced Planck constant"),
+    (constants.BOLTZMANN, "Boltzmann constant"),
+    (constants.ELEMENTARY_CHARGE, "elementary charge"),
+    (constants.BOHR_MAGNETON, "Bohr magneton"),
+    (constants.NUCLEAR_MAGNETON, "nuclear magneton"),
+    (constants.MAGNETIC_CONSTANT, "vacuum mag. permeability"),
+    (constants.MICRO_EV * 1e6, "electron volt"),
+])
+def test_scipy_ships_the_same_codata_values(ours: float, name: str) -> None:
+    assert ours == pytest.approx(value(name), rel=1e-15)
+
+
+def test_the_electron_g_factor_is_kept_as_a_magnitude() -> None:
+    assert -constants.ELECTRON_G == value("electron g factor")
+
+
+def test_bohr_magneton_in_hertz_is_the_printed_one() -> None:
+    # C1: CODATA 2022 (NIST SP 961) prints 1.399 624 491 71(44)e10 Hz/T
+    assert pytest.approx(13.9962449171e9, rel=5e-10) == constants.BOHR_MAGNETON_HZ
+
+
+def test_temperature_equivalents_are_the_printed_ones() -> None:
+    # C3: CODATA 2022 prints k/h = 2.083 661 912...e10 Hz/K (exact) and muB/k = 0.671 713 814 72(21) K/T
+    assert constants.BOLTZMANN / constants.PLANCK == pytest.approx(20.836619123e9, rel=1e-9)
+    assert constants.BOHR_MAGNETON / constants.BOLTZMANN == pytest.approx(0.67171381472, rel=1e-9)
+
+
+def test_one_micro_electronvolt_is_242_megahertz() -> None:
+    # scipy: 'electron volt-hertz relationship'
+    assert constants.MICRO_EV / constants.PLANCK == pytest.approx(1e-6 * value("electron volt-hertz relationship"), rel=1e-14)
+
+
+def test_mathematical_constants() -> None:
+    assert constants.EULER_GAMMA == pytest.approx(float(np.euler_gamma), rel=1e-15)
+    assert constants.APERY == pytest.approx(float(zeta(3)), rel=1e-15)
+    assert pytest.approx(constants.PLANCK / (2 * pi), rel=1e-15) == constants.REDUCED_PLANCK
