@@ -129,7 +129,9 @@ def _document(path: Path, changes: Sequence[str], *, keep_unknown: bool = False)
 def _with(document: Document, changes: Sequence[str]) -> Document:
     from dataclasses import replace
 
-    from planner.plan import GivenError, UnknownKey, address_of, edited
+    from planner.plan import UnknownKey, address_of
+    from planner.soundness import edited
+    from planner.values import GivenError
     from planner.planfile import PlanError
 
     plan = document.plan

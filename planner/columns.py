@@ -16,7 +16,8 @@ from planner.graph import HOST, givens
 from planner.kinds import Quantity
 from planner.materials import material
 from planner.physics import Array
-from planner.plan import ROWS, Plan, Value, unstated
+from planner.plan import ROWS, Plan, unstated
+from planner.values import Value
 
 
 @dataclass(frozen=True, slots=True)
@@ -65,7 +66,8 @@ class Column:
 
     def base(self) -> Array:
         """The values of the plan itself, one a row: the first along every study's axis."""
-        return self.values.reshape(-1, self.values.shape[-1])[0]
+        base: Array = self.values.reshape(-1, self.values.shape[-1])[0]
+        return base
 
     def on(self, switch: Switch) -> bool:
         """Whether a switch on this column is on; off where the column is unknown."""

@@ -13,7 +13,8 @@ from planner.declare import Derived, Input, Lock, Per
 from planner.graph import Graph, graph
 from planner.margins import CLEAR, VERDICTS, Margin, judge
 from planner.physics import Array
-from planner.plan import Address, Plan, Resolved, addresses, key_of, number, resolved, row_name
+from planner.plan import Address, Plan, Resolved, addresses, key_of, resolved, row_name
+from planner.values import number
 
 if TYPE_CHECKING:
     import pint
@@ -63,7 +64,8 @@ class Evaluation:
         """A result as a pint quantity in SI units, rows on the last axis; unknown values are nan."""
         from planner.unitstable import as_pint  # pint takes longer to load than a plan to evaluate
 
-        return as_pint(self.columns[key].values, self.derived(key).kind.si)
+        quantity: pint.Quantity[Any] = as_pint(self.columns[key].values, self.derived(key).kind.si)
+        return quantity
 
 
 def evaluate(plan: Plan, swept: Mapping[str, Array] | None = None) -> Evaluation:
@@ -199,7 +201,7 @@ def _explained(derived: Derived, values: Array, why: dict[int, Reason]) -> tuple
             if derived.unknown is None:
                 raise AssertionError(f"{derived.key} is not a number although everything it needs is known")
             why[int(row)] = Reason(derived.unknown.reason, derived.unknown.given)
-    known = known.copy()
+    known = np.array(known)
     known[..., list(why)] = False
     return np.where(known.reshape(known.shape + (1,) * len(axes)), values, np.nan), why
 

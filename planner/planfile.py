@@ -13,19 +13,9 @@ from typing import Any
 from planner import durable, tomltext
 from planner.declare import Given
 from planner.kinds import clean
-from planner.plan import (
-    ROWS,
-    SECTIONS,
-    TABLES,
-    GivenError,
-    Plan,
-    Value,
-    nearest,
-    problems,
-    read_value,
-    table_givens,
-    with_rows,
-)
+from planner.plan import ROWS, SECTIONS, TABLES, Plan, table_givens, with_rows, with_section
+from planner.soundness import problems
+from planner.values import GivenError, Value, nearest, read_value
 from planner.tomltext import Change, InsertRow, RemoveRow
 
 LARGEST_FILE = 1_000_000  # bytes
@@ -180,8 +170,7 @@ def _read_tables(reader: _Reader, data: Mapping[str, Any]) -> None:
 
 def _read_section(reader: _Reader, table: str, entries: Mapping[str, Any]) -> None:
     values = _read_entries(reader, table, entries, ((table,) if table else ()), f"{table}." if table else "")
-    section = SECTIONS[table](**values)
-    reader.plan = replace(reader.plan, **{table or "header": section})
+    reader.plan = with_section(reader.plan, table, SECTIONS[table](**values))
 
 
 def _read_rows(reader: _Reader, table: str, entries: object) -> None:
@@ -267,8 +256,8 @@ def _changes(table: str, path: tomltext.Path, old: Any, new: Any, found: Mapping
 
 def _row_edits(table: str, old: tuple[Any, ...], new: tuple[Any, ...], found: list[Any]) -> Iterator[tomltext.Edit]:
     """Rows are matched by name; a stretch of as many rows in the same place is a change of these rows."""
-    names = [[getattr(row, "name", None) for row in rows] for rows in (old, new)]
-    for tag, first, last, start, end in SequenceMatcher(None, *names, autojunk=False).get_opcodes():
+    before, after = ([str(getattr(row, "name", None)) for row in rows] for rows in (old, new))
+    for tag, first, last, start, end in SequenceMatcher(None, before, after, autojunk=False).get_opcodes():
         if tag == "equal" or (tag == "replace" and last - first == end - start):
             for index, row in zip(range(first, last), new[start:end], strict=True):
                 yield from _changes(table, (table, index), old[index], row, found[index])

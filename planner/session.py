@@ -7,7 +7,9 @@ from pathlib import Path
 
 from planner import planfile
 from planner.chapters.qubit import Qubit
-from planner.plan import Address, GivenError, Plan, edited, problems, read_value, unit_shown, with_rows
+from planner.plan import Address, Plan, unit_shown, with_rows
+from planner.soundness import edited, problems
+from planner.values import GivenError, read_value
 from planner.planfile import Document
 
 
@@ -67,7 +69,7 @@ def with_qubit(session: Session, name: str, after: int) -> Session:
     """The session with one more qubit behind row `after`, a copy of it under a new name. Raises GivenError."""
     rows = session.plan.qubit
     source = rows[after] if rows else Qubit()
-    row = replace(source, name=read_value(Address("qubit", 0, "name").given, name))
+    row = replace(source, name=str(read_value(Address("qubit", 0, "name").given, name)))
     return _checked(session, with_rows(session.plan, "qubit", (*rows[:after + 1], row, *rows[after + 1:])))
 
 

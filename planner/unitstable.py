@@ -11,9 +11,13 @@ from dataclasses import dataclass, field
 from decimal import Decimal
 from functools import cache
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import pint
+
+if TYPE_CHECKING:
+    import numpy as np
+    from numpy.typing import NDArray
 
 TABLE = Path(__file__).with_name("data") / "units.toml"
 
@@ -75,6 +79,12 @@ def pint_spelling(unit: str) -> str:
     for ours, theirs in PINT_SPELLINGS:
         text = text.replace(ours, theirs)
     return "dimensionless" if text in ("", "1") else text
+
+
+def as_pint(values: NDArray[np.float64], si: str) -> pint.Quantity[Any]:
+    """An array of SI values as a pint quantity, in a registry of ordinary floats."""
+    made: pint.UnitRegistry[Any] = pint.get_application_registry()  # type: ignore[no-untyped-call]
+    return made.Quantity(values, made.Unit(pint_spelling(si)))
 
 
 def factor(unit: str, si: str) -> Decimal:

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping
 from decimal import Context, Decimal, localcontext
-from math import cos, exp, hypot, isnan, log, nan, pi, sqrt
+from math import cos, exp, hypot, isnan, log, nan, pi, sin, sqrt
 
 from scipy.integrate import quad
 from scipy.special import sici
@@ -123,8 +123,7 @@ def flicker_variance(run: float, gap: float, averaging: float) -> float:
 
 def flicker_integral(z: float) -> float:
     """Integral from z of (1 - cos u)/u^3, by parts down to the cosine integral."""
-    sine = 2 * (quad(lambda u: cos(u * z / 2), 0, 1)[0]) ** 2 / 4  # (1 - cos z)/(2 z^2), without cancelling
-    return float(sine / 2 + (quad(lambda u: cos(u * z), 0, 1)[0] - sici(z)[1]) / 2) + float(sine) / 2
+    return float((sin(z / 2) / z) ** 2 + (sin(z) / z - sici(z)[1]) / 2)
 
 
 def free(t: float, static: float, amplitude: float, white: float, lowest: float) -> float:
@@ -149,7 +148,7 @@ def pulse_error(ratio: float) -> float:
     """Average infidelity of a pi pulse over Gaussian detunings of this rms, in Rabi frequencies."""
 
     def integrand(r: float) -> float:
-        lost = 2 / 3 * (1 - (1 - cos(pi * sqrt(1 + r * r))) / 2 / (1 + r * r))
+        lost = 2 / 3 * (r * r + cos(pi / 2 * sqrt(1 + r * r)) ** 2) / (1 + r * r)
         return lost * exp(-((r / ratio) ** 2) / 2)
 
     value, _ = quad(integrand, 0, 9 * ratio, epsabs=0, epsrel=1e-11, limit=500)

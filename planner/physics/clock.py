@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import NDArray
 
 from planner.declare import law
 from planner.kinds import DRIFT, FRACTION, FREQUENCY, TIME, COUNT
@@ -78,7 +79,7 @@ def stability(*, white: Array, sequence_time: Array) -> Array:
     return white / np.sqrt(sequence_time)
 
 
-def below_allan_range(*, sequence_time: Array) -> Array:
+def below_allan_range(*, sequence_time: Array) -> NDArray[np.bool_]:
     """Where white FM is extrapolated below 0.1 s, which overstates a quartz clock (white and flicker PM rule there)."""
     return np.asarray(sequence_time < 0.1)
 

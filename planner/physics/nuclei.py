@@ -6,6 +6,7 @@ Couplings are atom-normalised: A_k = A |psi_k|^2 summed over all atoms, N = 1/su
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import NDArray
 
 from planner.constants import PLANCK
 from planner.declare import law
@@ -48,7 +49,7 @@ def barrier_noise(*, model: Array, typed: Array) -> Array:
     return np.where(np.isnan(typed), model, 0.0)
 
 
-def few_nuclei(*, nuclei: Array, spinful_fraction: Array, typed: Array, tracked: Array, t2_star: Array) -> Array:
+def few_nuclei(*, nuclei: Array, spinful_fraction: Array, typed: Array, tracked: Array, t2_star: Array) -> NDArray[np.bool_]:
     """Where the bath formula is only a bound: fewer than 100 spinful nuclei, and nothing measured in its place.
 
     The limit of 100 is a judgement from published misses of the formula (with 40 nuclei it was 35 times off).

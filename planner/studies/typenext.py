@@ -7,7 +7,8 @@ from typing import NamedTuple
 from planner.declare import Form
 from planner.evaluate import Evaluation, evaluate
 from planner.margins import UNKNOWN
-from planner.plan import Plan, address_of, read_value, replaced
+from planner.plan import Plan, address_of, replaced
+from planner.values import read_value
 
 
 class TypeNext(NamedTuple):

@@ -12,7 +12,7 @@ from textual.widgets import Static
 
 from planner import session as sessions
 from planner.evaluate import Evaluation, evaluate
-from planner.plan import GivenError
+from planner.values import GivenError
 from planner.planfile import Document
 from planner.session import Session
 from planner.studies.typenext import TypeNext, type_next
@@ -182,10 +182,12 @@ class Planner(App[None], inherit_bindings=False):
 
     def action_do(self, method: str) -> None:
         """Do one action of the table."""
-        {"undo": lambda: self.take(sessions.undone(self.session)), "redo": lambda: self.take(sessions.redone(self.session)),
+        actions: dict[str, Callable[[], object]] = {
+         "undo": lambda: self.take(sessions.undone(self.session)), "redo": lambda: self.take(sessions.redone(self.session)),
          "save": lambda: files.save(self), "save_as": lambda: files.save_as(self), "leave": lambda: files.leave(self),
          "add_qubit": self.add_qubit, "drop_qubit": self.drop_qubit, "margins": lambda: self.visit("margins"),
-         "help": lambda: self.push_screen(Help())}[method]()
+         "help": lambda: self.push_screen(Help())}
+        actions[method]()
 
     def add_qubit(self) -> None:
         """Ask for a name and add a qubit below the one under the cursor."""

@@ -6,6 +6,7 @@ from collections.abc import Callable, Mapping
 
 from rich.text import Text
 from textual import events
+from textual.widget import Widget
 from textual.widgets import Static
 
 from planner.tui.actions import ACTIONS, RESTING, actions_line
@@ -91,7 +92,7 @@ class Foot(Static, can_focus=True):
     def _take_keyboard(self) -> None:
         focused = self.screen.focused
         if focused is not None and focused is not self:
-            self._back = focused.focus
+            self._back = lambda: _focus(focused)
         self.focus(scroll_visible=False)
         self._paint()
 
@@ -116,6 +117,10 @@ class Foot(Static, can_focus=True):
     def on_resize(self) -> None:
         """Another width, another cut."""
         self._paint()
+
+
+def _focus(widget: Widget) -> None:
+    widget.focus(scroll_visible=False)
 
 
 def _bound(do: Callable[[str], None], method: str) -> Then:

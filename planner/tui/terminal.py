@@ -121,7 +121,7 @@ def _make_input_tolerant() -> None:
     parse = XTermParser._parse_extended_key
     if parse.__module__ != __name__:
         XTermParser._parse_extended_key = _tolerant(parse)  # type: ignore[assignment]
-        XTermParser._sequence_to_key_events = _escape_first(XTermParser._sequence_to_key_events)  # type: ignore[assignment]
+        XTermParser._sequence_to_key_events = _escape_first(XTermParser._sequence_to_key_events)  # type: ignore[method-assign]
 
 
 def _escape_first(keys_of: Callable[..., Iterable[Key]]) -> Callable[..., Iterable[Key]]:

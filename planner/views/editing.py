@@ -6,7 +6,9 @@ from planner.declare import Form
 from planner.evaluate import Evaluation, evaluate
 from planner.graph import graph
 from planner.kinds import Quantity
-from planner.plan import Address, GivenError, UnknownKey, address_of, edited, resolved, unit_shown
+from planner.plan import Address, UnknownKey, address_of, resolved, unit_shown
+from planner.soundness import edited
+from planner.values import GivenError
 from planner.views.numbers import understood, without_origin
 from planner.views.rows import headline, margin_line
 from planner.views.words import help_line

@@ -4,7 +4,8 @@ from __future__ import annotations
 
 from planner.declare import OWN, Form, Given, Missing, law_of
 from planner.graph import graph, givens
-from planner.plan import ROWS, SECTIONS, bounds_text, table_givens
+from planner.plan import ROWS, SECTIONS, table_givens
+from planner.values import bounds_text
 from planner.references import references
 
 LATER = "no result uses it yet"
