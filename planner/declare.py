@@ -237,16 +237,17 @@ class Derived:
     heading: str = ""
     display: str = ""
     digits: int = 3
+    sources: Mapping[str, Input] = field(init=False)
+
+    def __post_init__(self) -> None:
+        """The arguments' sources, each as an `Input`."""
+        sources = {name: Input(source) if isinstance(source, str) else source for name, source in self.inputs.items()}
+        object.__setattr__(self, "sources", sources)
 
     @property
     def kind(self) -> Kind:
         """The kind of the result."""
         return law_of(self.law).result
-
-    @property
-    def sources(self) -> dict[str, Input]:
-        """The arguments' sources, each as an `Input`."""
-        return {name: Input(s) if isinstance(s, str) else s for name, s in self.inputs.items()}
 
 
 @dataclass(frozen=True, slots=True)

@@ -13,7 +13,7 @@ from planner.declare import Derived, Input, Lock, Per
 from planner.graph import Graph, graph
 from planner.margins import CLEAR, VERDICTS, Margin, judge
 from planner.physics import Array
-from planner.plan import Address, Plan, Resolved, addresses, key_of, resolved, row_name
+from planner.plan import Address, Plan, Resolved, addresses, key_of, resolved
 from planner.values import number
 
 if TYPE_CHECKING:
@@ -75,10 +75,11 @@ def evaluate(plan: Plan, swept: Mapping[str, Array] | None = None) -> Evaluation
     that depends on them then leads with; verdicts are those of the first entry.
     """
     wiring = graph()
-    roles = given_column(plan, "qubit.role", range(len(plan.qubit))).words
+    roles = given_column(plan, "qubit.role", plan.qubit).words
     rows = tuple(row for row, role in enumerate(roles) if role != "dead")
-    names = tuple(row_name(plan, "qubit", row) for row in rows)
-    columns = {key: given_column(plan, key, rows) for key in wiring.needed} | host_columns(plan)
+    qubits = [plan.qubit[row] for row in rows]
+    names = tuple(str(qubit.name) for qubit in qubits)
+    columns = {key: given_column(plan, key, qubits) for key in wiring.needed} | host_columns(plan)
     for key, values in (swept or {}).items():
         _sweep(columns, key, values, names)
     used = tuple(row for row, word in enumerate(columns["qubit.role"].words) if word == "use")
@@ -185,8 +186,8 @@ class _Scope:
 
 def _with_rows(values: Array, rows: int, trailing: tuple[int, ...]) -> Array:
     """The values with all rows on their axis."""
-    lead = values.shape[:max(0, values.ndim - 1 - len(trailing))]
-    return np.broadcast_to(values, (*lead, rows, *trailing))
+    shape = (*values.shape[:max(0, values.ndim - 1 - len(trailing))], rows, *trailing)
+    return values if values.shape == shape else np.broadcast_to(values, shape)
 
 
 def _explained(derived: Derived, values: Array, why: dict[int, Reason]) -> tuple[Array, dict[int, Reason]]:

@@ -29,23 +29,19 @@ class WiringError(Exception):
 
 @dataclass(frozen=True, slots=True)
 class Graph:
-    """Results in an order in which each can be computed, the limits, what lies upstream of every result, and the givens
-    that any of these needs."""
+    """Results in an order in which each can be computed, the limits, what lies upstream of every result, the givens that
+    any of these needs, and the latest lock of the choices that act on each side of a comparison."""
 
     order: tuple[Derived, ...]
     limits: tuple[Limit, ...]
     upstream: Mapping[str, frozenset[str]]
     needed: tuple[str, ...]
+    locks: Mapping[str, Lock | None]
 
     def until(self, compares: Sequence[Compare]) -> Lock | None:
         """The latest lock among the choices upstream of these comparisons; None where no choice acts on them."""
-        keys = {key for compare in compares for end in (compare.allowed, compare.expected) for key in self.reach(end)}
-        locks = [lock for key in keys if (lock := _lock(key)) is not None]
-        return max(locks, default=None)
-
-    def reach(self, key: str) -> frozenset[str]:
-        """The key itself and everything upstream of it."""
-        return self.upstream.get(key, frozenset()) | {key}
+        locks = (self.locks[end] for compare in compares for end in (compare.allowed, compare.expected))
+        return max((lock for lock in locks if lock is not None), default=None)
 
 
 @cache
@@ -69,7 +65,9 @@ def build(deriveds: tuple[Derived, ...], limits: tuple[Limit, ...]) -> Graph:
     for key in order:
         upstream[key] = parents[key].union(*(upstream.get(parent, frozenset()) for parent in parents[key]))
     used = set().union(*upstream.values(), *map(_limit_keys, limits))
-    return Graph(tuple(by_key[key] for key in order), limits, upstream, tuple(key for key in givens() if key in used))
+    ends = {end for limit in limits for compare in limit.compares for end in (compare.allowed, compare.expected)}
+    return Graph(tuple(by_key[key] for key in order), limits, upstream, tuple(key for key in givens() if key in used),
+                 {end: _latest_lock({end, *upstream.get(end, ())}) for end in ends})
 
 
 @cache
@@ -103,9 +101,9 @@ def _limit_keys(limit: Limit) -> set[str]:
     return keys
 
 
-def _lock(key: str) -> Lock | None:
-    given = givens().get(key)
-    return given.locks if given is not None and given.nature is Nature.CHOICE else None
+def _latest_lock(keys: set[str]) -> Lock | None:
+    choices = (given for key in keys if (given := givens().get(key)) is not None and given.nature is Nature.CHOICE)
+    return max((given.locks for given in choices if given.locks is not None), default=None)
 
 
 def _misfits(deriveds: tuple[Derived, ...]) -> Iterator[str]:

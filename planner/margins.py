@@ -19,6 +19,8 @@ VERDICTS = ("short", "unknown", "tight", "clear")  # in the order of what is wor
 SHORT, UNKNOWN, TIGHT, CLEAR = range(4)
 _NOT_MADE = CLEAR + 1  # a comparison that a row does not make is never its worst
 
+Rows = NDArray[np.intp]
+
 
 class Judged(NamedTuple):
     """One comparison over the judged rows: both sides, margins (nan unknown) and verdict codes."""
@@ -34,14 +36,14 @@ class Judged(NamedTuple):
 class Margin:
     """A limit's margin over the rows it judges, and the worst of them.
 
-    `rows` are the judged rows, `margins` and `codes` (positions in VERDICTS) one for each, of the worse comparison. `worst`
+    `rows` are the positions of the judged rows, `margins` and `codes` (positions in VERDICTS) one for each, of the worse comparison. `worst`
     is the position of the worst in `rows`, `row` the name of that qubit ("" where the comparison is one of the plan).
     `allowed` and `expected` are those of the worst, None where unknown, `reason` says why, `note` why a verdict is tempered.
     `until` is the latest lock of the choices that act on it.
     """
 
     limit: Limit
-    rows: tuple[int, ...]
+    rows: Rows
     margins: Array
     codes: NDArray[np.int64]
     worst: int
@@ -82,13 +84,14 @@ class Margin:
 def judge(columns: Mapping[str, Column], graph: Graph, used: Sequence[int], names: Sequence[str],
           wanted: float) -> tuple[tuple[Margin, ...], dict[str, str]]:
     """The asked margins over the rows in use, and the reasons of those that are not asked."""
+    rows, one = np.array(used, dtype=np.intp), np.zeros(1, dtype=np.intp)
     margins: list[Margin] = []
     not_asked: dict[str, str] = {}
     for limit in graph.limits:
         if limit.asked is not None and not columns[limit.asked.key].on(limit.asked):
             not_asked[limit.name] = limit.not_asked
         else:
-            margins.append(_margin(columns, graph, limit, tuple(used) if limit.per is Per.QUBIT else (0,), names, wanted))
+            margins.append(_margin(columns, graph, limit, rows if limit.per is Per.QUBIT else one, names, wanted))
     return tuple(margins), not_asked
 
 
@@ -97,43 +100,60 @@ def number_or_none(value: float) -> float | None:
     return None if np.isnan(value) else float(value)
 
 
-def _margin(columns: Mapping[str, Column], graph: Graph, limit: Limit, rows: tuple[int, ...], names: Sequence[str],
+def _margin(columns: Mapping[str, Column], graph: Graph, limit: Limit, rows: Rows, names: Sequence[str],
             wanted: float) -> Margin:
     compares = [compare for compare in limit.compares if compare.when is None or columns[compare.when.key].on(compare.when)]
     judged = [_judged(columns, limit, compare, rows, wanted) for compare in compares]
-    codes = np.stack([one.codes for one in judged])
-    sizes = np.nan_to_num(np.stack([one.margins for one in judged]))
-    worse = np.lexsort((sizes, codes), axis=0)[0]  # the worse comparison of each row, then the worst row
-    every = np.arange(len(rows))
-    worst = int(np.lexsort((sizes[worse, every], codes[worse, every]))[0])
-    chosen = judged[int(worse[worst])]
+    ranks = [_rank(one) for one in judged]
+    every, margins, codes = ranks[0], judged[0].margins, judged[0].codes
+    for one, rank in zip(judged[1:], ranks[1:], strict=True):  # the worse comparison of each row
+        worse = rank < every
+        every = np.minimum(rank, every)
+        margins, codes = np.where(worse, one.margins, margins), np.where(worse, one.codes, codes)
+    worst = int(np.argmin(every))
+    row = int(rows[worst])
+    chosen = judged[min(range(len(judged)), key=lambda place: float(ranks[place][worst]))]
     ends = [columns[key] for key in (chosen.compare.allowed, chosen.compare.expected)]
     of_plan = all(column.of_plan for column in ends)
-    margins = np.stack([one.margins for one in judged])[worse, every]
-    return Margin(limit, rows, margins, codes[worse, every], worst, "" if of_plan else names[rows[worst]], chosen.compare,
+    return Margin(limit, rows, margins, codes, worst, "" if of_plan else names[row], chosen.compare,
                   number_or_none(chosen.allowed[worst]), number_or_none(chosen.expected[worst]),
-                  _reason(ends, rows[worst], names), _note(ends, rows[worst]), graph.until(compares))
+                  _reason(ends, row, names), _note(ends, row), graph.until(compares))
 
 
-def _judged(columns: Mapping[str, Column], limit: Limit, compare: Compare, rows: tuple[int, ...], wanted: float) -> Judged:
+def _rank(judged: Judged) -> Array:
+    """A number that sorts rows worst first: by verdict, then by size."""
+    known = np.where(np.isnan(judged.margins), 0.0, judged.margins)
+    return np.asarray(judged.codes * (2 * LARGEST_MARGIN) + np.minimum(known, LARGEST_MARGIN), dtype=np.float64)
+
+
+def _judged(columns: Mapping[str, Column], limit: Limit, compare: Compare, rows: Rows, wanted: float) -> Judged:
     ends = [columns[compare.allowed], columns[compare.expected]]
     allowed, expected = (_at(column, rows) for column in ends)
     with np.errstate(divide="ignore", invalid="ignore"):
-        ratio = np.where(expected > 0, np.maximum(allowed, 0.0) / expected, np.where(allowed >= 0, np.inf, 0.0))
-    margins = np.where(np.isnan(allowed) | np.isnan(expected), np.nan, np.minimum(ratio, LARGEST_MARGIN))
-    tight = TIGHT if limit.tight_counts else CLEAR
-    codes = np.select([np.isnan(margins), margins < 1, margins <= wanted], [UNKNOWN, SHORT, tight], CLEAR)
+        ratio = np.maximum(allowed, 0.0) / expected
+    ratio = np.where((expected == 0) & (allowed >= 0), np.inf, ratio)  # nothing expected is within anything allowed
+    margins = np.minimum(ratio, LARGEST_MARGIN)
+    codes = np.where(margins < 1, SHORT, np.where(margins <= wanted, TIGHT if limit.tight_counts else CLEAR, CLEAR))
+    codes = np.where(np.isnan(margins), UNKNOWN, codes)
     if any(column.bound for column in ends):  # an upper bound of what is expected can't condemn a plan
-        codes = np.where((codes == SHORT) & [bool(_note(ends, row)) for row in rows], TIGHT, codes)
-    made = np.ones(len(rows), dtype=bool)
+        codes = np.where((codes == SHORT) & _bounded(ends, rows), TIGHT, codes)
     for key in compare.only_with:
-        made &= ~np.isnan(_at(columns[key], rows))
-    return Judged(compare, allowed, expected, np.where(made, margins, np.inf), np.where(made, codes, _NOT_MADE))
+        made = ~np.isnan(_at(columns[key], rows))
+        margins, codes = np.where(made, margins, LARGEST_MARGIN), np.where(made, codes, _NOT_MADE)
+    return Judged(compare, allowed, expected, margins, codes)
 
 
-def _at(column: Column, rows: tuple[int, ...]) -> Array:
+def _at(column: Column, rows: Rows) -> Array:
     base = column.base()
-    return np.full(len(rows), base[0]) if column.of_plan else base[list(rows)]
+    return np.full(len(rows), base[0]) if column.of_plan else base[rows]
+
+
+def _bounded(ends: Sequence[Column], rows: Rows) -> NDArray[np.bool_]:
+    """Rows in which either side is only a bound."""
+    bounded = np.zeros(len(rows), dtype=bool)
+    for column in ends:
+        bounded |= 0 in column.bound if column.of_plan else np.isin(rows, list(column.bound))
+    return bounded
 
 
 def _reason(ends: Sequence[Column], row: int, names: Sequence[str]) -> Reason | None:

@@ -10,6 +10,8 @@ from planner.kinds import Quantity
 from planner.plan import NAMED, ROWS, SECTIONS, Address, Plan, key_of, replaced, resolved, row_name, stated, table_givens
 from planner.values import GivenError, components, nearest, number, read_value
 
+NOT_IN_NAMES = ".='\"\ufffd"  # they part keys and --with; the last stands for a character that is not shown
+
 
 class Problem(NamedTuple):
     """What is wrong with a plan as a whole: the key and a sentence to act on."""
@@ -28,18 +30,23 @@ def edited(plan: Plan, address: Address, text: str, *, assume: str = "") -> Plan
 
     `assume` is the unit of a bare number. A plan without problems stays one without.
     """
-    given = address.given
-    if text.strip():
-        changed = replaced(plan, address, read_value(given, text.strip(), assume=assume))
-    elif given.missing is Missing.REQUIRED and address.table != "all_qubits":
-        raise GivenError(f"{address.field} is required: type {given.help.split(';')[0]}, as '{given.example}'")
-    else:
-        changed = replaced(plan, address, None)
-    before = set(problems(plan))
-    for problem in problems(changed):
-        if problem not in before:
-            raise GivenError(f"{problem.key}: {problem.sentence}")
+    changed = entered(plan, address, text, assume=assume)
+    refuse_new_problems(plan, changed)
     return changed
+
+
+def entered(plan: Plan, address: Address, text: str, *, assume: str = "") -> Plan:
+    """As `edited`, but not yet held against the other givens, for edits that belong together. Raises GivenError."""
+    typed = text.strip()
+    return replaced(plan, address, read_value(address.given, typed, assume=assume) if typed else None)
+
+
+def refuse_new_problems(before: Plan, after: Plan) -> None:
+    """Raises GivenError with the first problem of a plan that it did not have before."""
+    known = set(problems(before))
+    for problem in problems(after):
+        if problem not in known:
+            raise GivenError(f"{problem.key}: {problem.sentence}")
 
 
 def _required(plan: Plan) -> Iterator[Problem]:
@@ -63,12 +70,12 @@ def _required(plan: Plan) -> Iterator[Problem]:
 def _names(plan: Plan) -> Iterator[Problem]:
     for table in NAMED:
         seen: set[str] = set()
-        for row in plan.rows(table):
+        for index, row in enumerate(plan.rows(table)):
             name = row.name
             if name is None:
                 continue
-            if not name or any(character in name for character in ".='\""):
-                yield Problem(f"{table}.name", f"'{name}' can't be a name: use letters and digits, no dot, = or quote")
+            if not name or any(character in name for character in NOT_IN_NAMES):
+                yield Problem(f"{table}.{index + 1}.name", f"'{name}' can't be a name: use letters and digits, no dot, = or quote")
             elif name in seen:
                 yield Problem(f"{table}.{name}.name", f"the name '{name}' is used twice: give every {table} its own")
             seen.add(name)
@@ -82,15 +89,16 @@ def _contradictions(plan: Plan) -> Iterator[Problem]:
         yield Problem("qubit.role", "no qubit is in use: give at least one the role 'use'")
     yield from _short_gates(plan)
     names = {row.name for row in plan.qubit}
-    for row in plan.pair:
+    for index, pair in enumerate(plan.pair):
         for end in ("first", "second"):
-            other = getattr(row, end)
+            other = getattr(pair, end)
             if other is not None and other not in names:
-                yield Problem(f"pair.{row.name}.{end}", f"there is no qubit '{other}'{nearest(other, list(map(str, names)))}")
-    for line in plan.line:
+                yield Problem(key_of(plan, Address("pair", index, end)), f"there is no qubit '{other}'{nearest(other, list(map(str, names)))}")
+    for index, line in enumerate(plan.line):
         if plan.stage and isinstance(line.attenuation, Quantity) and components(line.attenuation) != len(plan.stage):
-            yield Problem(f"line.{line.name}.attenuation", f"'{line.attenuation.text}' has {components(line.attenuation)} values for "
-                          f"{len(plan.stage)} stages: write one dB value per stage, 0 where there is none")
+            yield Problem(key_of(plan, Address("line", index, "attenuation")),
+                          f"'{line.attenuation.text}' has {components(line.attenuation)} values for {len(plan.stage)} "
+                          "stages: write one dB value per stage, 0 where there is none")
 
 
 def _short_gates(plan: Plan) -> Iterator[Problem]:

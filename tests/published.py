@@ -1,7 +1,7 @@
 """The published formulas once more, in plain floats: what a bench plan must give.
 
-One electron with a scalar g in Si/SiGe, field and local field along c1. Integrals are done by scipy, equations solved by
-bisection, the variance of the clock by its defining sum in 50 digits, so that nothing is shared with the package.
+One electron with a scalar g in Si/SiGe, field and local field along c1. Integrals are done by scipy, equations solved
+by bisection, the variance of the clock by its defining sum in 50 digits, so that nothing is shared with the package.
 """
 
 from __future__ import annotations
@@ -10,8 +10,8 @@ from collections.abc import Callable, Mapping
 from decimal import Context, Decimal, localcontext
 from math import cos, exp, hypot, isnan, log, nan, pi, sin, sqrt
 
-from scipy.integrate import quad
-from scipy.special import sici
+from scipy.integrate import quad  # type: ignore[import-untyped]
+from scipy.special import sici  # type: ignore[import-untyped]
 
 MU_B = 13.9962449171e9  # Hz/T, CODATA 2022
 H = 6.62607015e-34  # J s, SI 2019
@@ -24,7 +24,8 @@ REFOCUSED = {1: log(2), 2: 0.39243611, 4: 0.20440050, 8: 0.10436393}  # filter-f
 SILENT: Mapping[str, float] = {
     "g": 2.0, "field": 0.5, "local": 0.0, "noise": 1e-6, "drift": 5e-6 / HOUR, "settle": 12e-6 / HOUR, "since": nan,
     "s1": 1e-11, "s100": nan, "aging": 1e-10 / DAY, "temperature": 0.1,
-    "spinful": 0.04685, "nuclei": 4e5, "germanium": 0.3, "share": 0.02, "barrier_nuclei": 1e5, "barrier_spinful": 0.0775,
+    "spinful": 0.04685, "nuclei": 4e5, "germanium": 0.3, "share": 0.02, "barrier_nuclei": 1e5,
+        "barrier_spinful": 0.0775,
     "charge_noise": 0.8 * UEV, "displacement": 1e-3 * 1e-9 / UEV, "gradient": nan, "relative": nan, "flicker": 3e3,
     "white": nan, "nuclear": nan, "tracked": nan, "t1": nan, "t2": nan, "rabi": 2e6, "valley": 150 * UEV,
     "gates": 100.0, "gate_time": nan, "idle": 0.0, "wait": 1e-6, "pulses": 0.0, "phase": 0.25, "gate_error": 1e-3,
@@ -192,7 +193,9 @@ def _noises(v: Mapping[str, float], frequency: float) -> dict[str, float]:
         "barrier": barrier if isnan(v["nuclear"]) else 0.0,
         "magnet": MU_B * v["g"] * v["noise"],
         "drift": MU_B * v["g"] * v["field"] * (v["drift"] + settling) * v["interval"],
-        "amplitude": _or(v["flicker"], _or(v["relative"] * frequency, _or(through_gradient, nan if v["local"] else 0.0))),
+        "amplitude": _or(
+            v["flicker"], _or(v["relative"] * frequency, _or(through_gradient, nan if v["local"] else 0.0))
+        ),
     }
 
 

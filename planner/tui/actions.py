@@ -31,7 +31,7 @@ RESTING = "Space actions   Enter edit   Tab next pane"
 KEYS = (
     ("arrows, Home, End, Page up/down", "move"),
     ("Tab, Shift-Tab", "next pane, previous pane"),
-    ("any character", "starts a new text for the given under the cursor"),
+    ("any character", "begins a new text for the given at the cursor"),
     ("Enter", "edits the present text; accepts a new one"),
     ("Up, Down, Tab", "accept the text being typed and go on"),
     ("Escape", "gives up the text, or closes the actions line"),

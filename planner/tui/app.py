@@ -16,7 +16,7 @@ from planner.values import GivenError
 from planner.planfile import Document
 from planner.session import Session
 from planner.studies.typenext import TypeNext, type_next
-from planner.tui import files, terminal
+from planner.tui import files, qubits, terminal
 from planner.tui.actions import ACTIONS
 from planner.tui.foot import Foot
 from planner.tui.grid import Grid
@@ -45,10 +45,11 @@ class Planner(App[None], inherit_bindings=False):
         self.session: Session = sessions.opened(document)
         self.evaluation: Evaluation = evaluate(document.plan)
         self.following: TypeNext | None = None
-        self.stop = "magnet"
+        self.stop = self.chapter = "magnet"  # the pane with the keyboard, and the givens shown below the qubits
+        self.news = ""  # what the next move of the cursor, which an action caused, must not wipe out
         self.head, self.foot = Head(), Foot()
         self.qubits = Grid(qubit_table(self.evaluation), title="qubits", id="qubits")
-        self.pane = Grid(pane_table(self.evaluation, self.stop, 80), title=self.stop, id="pane")
+        self.pane = Grid(pane_table(self.evaluation, self.chapter, 80), title=pane_title(self.chapter), id="pane")
         self.margins = Grid(margin_table(self.evaluation, 80), title="margins", id="margins")
 
     def compose(self) -> ComposeResult:
@@ -63,6 +64,7 @@ class Planner(App[None], inherit_bindings=False):
         """The field is what people look for first."""
         terminal.install_signal_handlers(self)
         self.visit("magnet")
+        self.look_ahead(self.evaluation)
         for note in self.session.document.ignored[:1]:
             self.foot.say(note, bad=True)
 
@@ -75,7 +77,7 @@ class Planner(App[None], inherit_bindings=False):
         narrow.display = small
         narrow.update(f"The window has {event.size.width} columns and {event.size.height} lines: "
                       f"the planner needs {NARROWEST} and {LOWEST}.")
-        self.arrange()
+        self.call_next(self.arrange)  # the app knows its new size only after this message
 
     # -- showing
 
@@ -85,23 +87,26 @@ class Planner(App[None], inherit_bindings=False):
         self.session = session
         if plan_changed:
             self.evaluation, self.following = evaluate(session.plan), None
+            self.qubits.show(qubit_table(self.evaluation))
             self.look_ahead(self.evaluation)
         self.arrange()
 
     def arrange(self) -> None:
-        """Show the evaluation in every part that is in view."""
+        """Show the evaluation around the qubits: head, givens and margins, as many as the window has room for."""
         width = self.size.width
         wide = width >= WIDE
         on_margins = self.stop == "margins"
         self.margins.display, self.pane.display = wide or on_margins, wide or not on_margins
         half = width // 2 if wide else width
-        state = "saved" if self.session.saved else "not saved"
-        self.head.show(head_lines(self.evaluation, self.following, state, width))
-        self.qubits.show(qubit_table(self.evaluation))
+        self.show_head()
         self.qubits.styles.max_height = max(5, self.size.height // 2 - 2)
         self.margins.show(margin_table(self.evaluation, half))
-        if self.stop in PANES and not on_margins:
-            self.pane.show(pane_table(self.evaluation, self.stop, half), title=pane_title(self.stop))
+        self.pane.show(pane_table(self.evaluation, self.chapter, half), title=pane_title(self.chapter))
+
+    def show_head(self) -> None:
+        """Show the lines on top."""
+        state = "saved" if self.session.saved else "not saved"
+        self.head.show(head_lines(self.evaluation, self.following, state, self.size.width))
 
     @work(thread=True, exclusive=True)
     def look_ahead(self, evaluation: Evaluation) -> None:
@@ -113,11 +118,12 @@ class Planner(App[None], inherit_bindings=False):
         """Show what was found, on its line alone."""
         if evaluation is self.evaluation:
             self.following = following
-            self.arrange()
+            self.show_head()
 
     def visit(self, stop: str) -> None:
         """Go to a pane."""
         self.stop = stop
+        self.chapter = self.chapter if stop in {"qubits", "margins"} else stop
         self.arrange()
         grid = {"qubits": self.qubits, "margins": self.margins}.get(stop, self.pane)
         grid.focus(scroll_visible=False)
@@ -139,7 +145,8 @@ class Planner(App[None], inherit_bindings=False):
     def on_grid_moved(self, message: Grid.Moved) -> None:
         """The help line follows the cursor."""
         if message.grid.has_focus:
-            self.foot.say(help_at(self.evaluation, message.key))
+            self.foot.say(self.news or help_at(self.evaluation, message.key))
+            self.news = ""
 
     def on_grid_typing(self, message: Grid.Typing) -> None:
         """Say what is understood while it is typed."""
@@ -185,26 +192,9 @@ class Planner(App[None], inherit_bindings=False):
         actions: dict[str, Callable[[], object]] = {
          "undo": lambda: self.take(sessions.undone(self.session)), "redo": lambda: self.take(sessions.redone(self.session)),
          "save": lambda: files.save(self), "save_as": lambda: files.save_as(self), "leave": lambda: files.leave(self),
-         "add_qubit": self.add_qubit, "drop_qubit": self.drop_qubit, "margins": lambda: self.visit("margins"),
+         "add_qubit": lambda: qubits.add(self), "drop_qubit": lambda: qubits.drop(self), "margins": lambda: self.visit("margins"),
          "help": lambda: self.push_screen(Help())}
         actions[method]()
-
-    def add_qubit(self) -> None:
-        """Ask for a name and add a qubit below the one under the cursor."""
-        row = self.qubits.cursor_row
-        self.foot.prompt("name of the new qubit", sessions.free_name(self.session.plan), lambda name: self.added(name, row))
-
-    def added(self, name: str, row: int) -> None:
-        """Add the qubit and go to it."""
-        if self.attempt(lambda: sessions.with_qubit(self.session, name, row)):
-            self.visit("qubits")
-            self.qubits.move_to(f"qubit.{name.strip()}.name")
-
-    def drop_qubit(self) -> None:
-        """Remove the qubit under the cursor."""
-        name = self.session.plan.qubit[self.qubits.cursor_row].name
-        if self.attempt(lambda: sessions.without_qubit(self.session, self.qubits.cursor_row)):
-            self.foot.say(f"removed {name}; Space u brings it back")
 
 
 def run(document: Document, *, mouse: bool = False) -> int:

@@ -24,8 +24,8 @@ class Draft:
 
     @classmethod
     def starting(cls, text: str) -> Draft:
-        """A text to go on with at its end."""
-        return cls("", 0).inserted(text)
+        """A text to go on with at its end; one that is longer than can be typed stays whole."""
+        return cls(text, len(text))
 
     def inserted(self, piece: str) -> Draft:
         """As much of the piece as the longest allowed text leaves room for."""

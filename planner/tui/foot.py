@@ -10,7 +10,7 @@ from textual.widget import Widget
 from textual.widgets import Static
 
 from planner.tui.actions import ACTIONS, RESTING, actions_line
-from planner.tui.draft import EDITS, Draft
+from planner.tui.draft import EDITS, Draft, cleaned
 from planner.tui.grid import typed_character
 
 Then = Callable[[], None]
@@ -73,7 +73,7 @@ class Foot(Static, can_focus=True):
         """Pasted text goes into the prompt."""
         if self._prompt is not None:
             question, draft, then = self._prompt
-            self._prompt = (question, draft.inserted(event.text.strip()), then)
+            self._prompt = (question, draft.inserted(cleaned(event.text)), then)
             self._paint()
 
     def _type(self, event: events.Key, question: str, draft: Draft, then: Callable[[str], None]) -> None:

@@ -22,7 +22,7 @@ class Head(Static):
         """Shows these lines."""
         if lines != self._lines:
             self._lines = lines
-            self.update(Text("\n").join([Text(lines[0]), Text(lines[1]), _worst(lines[2])]), layout=False)
+            self.update(Text("\n", no_wrap=True, overflow="ellipsis").join([Text(lines[0]), Text(lines[1]), _worst(lines[2])]), layout=False)
 
 
 def _worst(line: str) -> Text:

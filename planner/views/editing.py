@@ -14,6 +14,7 @@ from planner.views.rows import headline, margin_line
 from planner.views.words import help_line
 
 NOT_TYPED = "results aren't typed: they follow from the givens"
+NOT_ON_A_QUBIT = "nothing removed: go to the row of the qubit first, with Tab and the arrows"
 REMOVED = "removed"
 
 
@@ -34,12 +35,17 @@ def help_at(evaluation: Evaluation, key: str) -> str:
     if name.startswith("margin."):
         margin = evaluation.margin(name.removeprefix("margin."))
         limit = next((limit for limit in graph().limits if f"margin.{limit.name}" == name), None)
-        return f"{margin_line(evaluation, margin)}. {margin.limit.meaning}" if margin and not row else limit.meaning if limit else ""
+        return f"{margin_line(evaluation, margin)}. {sentence(margin.limit.meaning)}" if margin and not row else limit.meaning if limit else ""
     derived = next((derived for derived in evaluation.graph.order if derived.key == name), None)
     if derived is None:
         return ""
     reason = evaluation.columns[name].why.get(evaluation.names.index(row)) if row in evaluation.names else None
     return f"{name}: {derived.help}" + (f". Unknown: {reason}" if reason else "")
+
+
+def sentence(text: str) -> str:
+    """The text with a capital, to follow another sentence."""
+    return text[:1].upper() + text[1:]
 
 
 def typing_line(evaluation: Evaluation, address: Address, text: str) -> tuple[str, bool]:

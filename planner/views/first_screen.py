@@ -17,7 +17,8 @@ def head_lines(evaluation: Evaluation, following: TypeNext | None, state: str, w
     parts = [device_line(plan), field_line(plan), passed_line(plan)]
     room = max(2, (width - len(state) - sum(map(len, parts))) // len(parts))
     first = (" " * min(room, 6)).join(parts)
-    return [f"{first}{state:>{max(0, width - len(first))}}"[:max(width, len(first))], counts(evaluation),
+    left = max(0, width - len(state) - 2) if state else width  # however long the names: the state stays in view
+    return [f"{first[:left]:<{left}}{'  ' if state else ''}{state}".rstrip(), counts(evaluation),
             headline(evaluation, following)]
 
 

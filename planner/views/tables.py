@@ -164,7 +164,7 @@ def origin_text(plan: Plan, address: Address) -> str:
     if source == "typed":
         return clean(value.origin) if isinstance(value, Quantity) else ""
     if source:
-        return {"all_qubits": "of all qubits", "material": "of the material", "default": "default"}[source]
+        return {"all_qubits": "all qubits", "material": "material", "default": "default"}[source]
     missing = address.given.missing
     return {Missing.OFF: "off", Missing.FOUND: "found", Missing.REQUIRED: "required"}.get(missing, "unknown")
 

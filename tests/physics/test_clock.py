@@ -10,7 +10,7 @@ from scipy.integrate import quad, simpson  # type: ignore[import-untyped]
 
 from planner.physics import clock
 
-from . import assert_axes_agree, row
+from . import assert_axes_agree, near, row
 
 TWO_LN2 = 2 * np.log(2)
 
@@ -25,8 +25,14 @@ def exact_flicker(run: float, gap: float, averaging: float) -> float:
         context.prec = 80
         t, g, a = Decimal(run), Decimal(gap), Decimal(averaging)
         times, weights = (-g - a, -g, Decimal(0), t), (1 / a, -1 / a, -1 / t, 1 / t)
-        total = sum((wi * wj * square_log(ti - tj) for ti, wi in zip(times, weights, strict=True)
-                     for tj, wj in zip(times, weights, strict=True)), Decimal(0))
+        total = sum(
+            (
+                wi * wj * square_log(ti - tj)
+                for ti, wi in zip(times, weights, strict=True)
+                for tj, wj in zip(times, weights, strict=True)
+            ),
+            Decimal(0),
+        )
         return float(total / (4 * Decimal(2).ln()))
 
 
@@ -37,50 +43,54 @@ def square_log(s: Decimal) -> Decimal:
 def test_the_sine_integral_behind_flicker_fm() -> None:
     # C13: integral of sin^4 x / x^3 = ln 2 (Ithier et al., Phys. Rev. B 72, 134519 (2005), from memory)
     head = quad(lambda x: np.sin(x) ** 4 / x**3, 0, 200, limit=1000)[0]
-    assert head + 3 / 8 / (2 * 200**2) == pytest.approx(np.log(2), abs=1e-6)
+    assert head + 3 / 8 / (2 * 200**2) == near(np.log(2), abs=1e-6)
 
 
 def test_unit_of_flicker_is_an_allan_deviation_of_one() -> None:
-    # Riley, NIST SP 1065 (2008): flicker FM, sigma_y^2 = 2 ln2 h_-1. By the transfer function of the two-sample variance:
+    # Riley, NIST SP 1065 (2008): flicker FM, sigma_y^2 = 2 ln2 h_-1; here by the two-sample transfer function
     frequency = np.geomspace(1e-6, 1e4, 2_000_001)
     transfer = 2 * np.sin(np.pi * frequency) ** 4 / (np.pi * frequency) ** 2
-    assert simpson(transfer, x=np.log(frequency)) == pytest.approx(TWO_LN2, rel=1e-5)
+    assert simpson(transfer, x=np.log(frequency)) == near(TWO_LN2, rel=1e-5)
 
 
 def test_two_adjacent_averages_of_one_length_are_the_two_sample_variance() -> None:
     # <(y2 - y1)^2> = 2 sigma_y^2, the definition of the Allan variance, whatever the length
     for length in (1e-6, 1.0, 3600.0):
-        assert flicker(length, 0.0, length) == pytest.approx(2.0, rel=1e-12)
-        assert flicker(length, 1e-12 * length, length) == pytest.approx(2.0, rel=1e-9)
+        assert flicker(length, 0.0, length) == near(2.0, rel=1e-12)
+        assert flicker(length, 1e-12 * length, length) == near(2.0, rel=1e-9)
 
 
 def test_flicker_of_the_worked_row() -> None:
-    assert flicker(1, 5, 10) * TWO_LN2 == pytest.approx(5.317817363, rel=1e-9)  # by = regression, unit h_-1
+    assert flicker(1, 5, 10) * TWO_LN2 == near(5.317817363, rel=1e-9)  # by = regression, unit h_-1
 
 
 def test_flicker_agrees_with_the_spectral_integral() -> None:
     # Var = integral of S_y |H|^2, S_y = h/f, h = 1/(2 ln 2), H the difference of the two averages' Fourier transforms
     run, gap, averaging = 1.0, 5.0, 10.0
     frequency = np.geomspace(1e-7, 1e3, 2_000_001)
-    means = [np.sinc(frequency * length) * np.exp(2j * np.pi * frequency * middle)
-             for length, middle in ((run, run / 2), (averaging, -gap - averaging / 2))]
+    means = [
+        np.sinc(frequency * length) * np.exp(2j * np.pi * frequency * middle)
+        for length, middle in ((run, run / 2), (averaging, -gap - averaging / 2))
+    ]
     integral = simpson(np.abs(means[0] - means[1]) ** 2, x=np.log(frequency)) / TWO_LN2
-    assert flicker(run, gap, averaging) == pytest.approx(integral, rel=1e-5)
+    assert flicker(run, gap, averaging) == near(integral, rel=1e-5)
 
 
 @pytest.mark.parametrize("averaging", [1e-4, 0.2, 10.0, 1e5])
 @pytest.mark.parametrize("gap", [5.0, 1800.0])
 @pytest.mark.parametrize("ratio", [1e-9, 1e-6, 1e-3, 0.05, 0.0999, 0.1001, 1.0, 100.0])
 def test_flicker_keeps_its_digits_where_the_plain_sum_cancels(ratio: float, gap: float, averaging: float) -> None:
-    assert flicker(ratio * gap, gap, averaging) == pytest.approx(exact_flicker(ratio * gap, gap, averaging), rel=1e-10)
+    assert flicker(ratio * gap, gap, averaging) == near(exact_flicker(ratio * gap, gap, averaging), rel=1e-10)
 
 
 @pytest.mark.parametrize("gap_of_run", [0.0, 1e-3, 1.0, 9.0])
-@pytest.mark.parametrize(("run", "digits_lost"), [(1e-9, 2e-7), (1e-6, 1e-9), (1e-3, 1e-12), (1.0, 1e-12), (1e3, 1e-12)])
+@pytest.mark.parametrize(
+    ("run", "digits_lost"), [(1e-9, 2e-7), (1e-6, 1e-9), (1e-3, 1e-12), (1.0, 1e-12), (1e3, 1e-12)]
+)
 def test_flicker_with_hardly_a_gap(run: float, digits_lost: float, gap_of_run: float) -> None:
     # a run that is comparable with the gap and far shorter than the averaging still loses digits in the closed form
     gap = gap_of_run * run
-    assert flicker(run, gap, 1.0) == pytest.approx(exact_flicker(run, gap, 1.0), rel=digits_lost)
+    assert flicker(run, gap, 1.0) == near(exact_flicker(run, gap, 1.0), rel=digits_lost)
 
 
 @pytest.mark.parametrize(("white", "floor"), [(3e-11, 0.0), (3e-11, 2e-12), (1e-12, 1e-12), (0.0, 5e-13)])
@@ -88,15 +98,17 @@ def test_white_and_flicker_are_found_from_their_allan_deviations(white: float, f
     # variances of independent noises add; white FM falls as 1/tau (Riley, NIST SP 1065)
     one, hundred = row(np.hypot(white, floor)), row(np.hypot(white / 10, floor))
     found = clock.white_fm(deviation_1s=one, deviation_100s=hundred)
-    assert found[0] == pytest.approx(white, rel=1e-6, abs=1e-19)
-    assert clock.flicker_fm(deviation_1s=one, deviation_100s=hundred, white=found)[0] == pytest.approx(floor, rel=1e-6, abs=1e-19)
+    assert found[0] == near(white, rel=1e-6, abs=1e-19)
+    assert clock.flicker_fm(deviation_1s=one, deviation_100s=hundred, white=found)[0] == near(
+        floor, rel=1e-6, abs=1e-19
+    )
 
 
 def test_a_clock_of_one_number_is_white() -> None:
     one = row(1e-11, 3e-13)
     hundred = clock.tenth(deviation_1s=one)
     white = clock.white_fm(deviation_1s=one, deviation_100s=hundred)
-    assert white == pytest.approx(one, rel=1e-12)
+    assert white == near(one, rel=1e-12)
     np.testing.assert_array_equal(clock.flicker_fm(deviation_1s=one, deviation_100s=hundred, white=white), 0.0)
 
 
@@ -108,39 +120,47 @@ def change(**parts: float) -> float:
 def test_white_fm_of_calibration_and_run_together_is_the_worked_row() -> None:
     white = np.sqrt(0.5)  # unit h0: sigma_y^2(1 s) = h0/2
     run = clock.stability(white=row(white), sequence_time=row(1.0))[0]
-    assert change(white=white) ** 2 + run**2 == pytest.approx(0.55, rel=1e-12)  # by = regression: (h0/2)(1/T + 1/tau_c)
+    assert change(white=white) ** 2 + run**2 == near(0.55, rel=1e-12)  # by = regression: (h0/2)(1/T + 1/tau_c)
 
 
 def test_ageing_is_the_difference_of_the_two_means_of_a_ramp() -> None:
     run, calibration = np.linspace(0, 1, 1001).mean(), np.linspace(-15, -5, 1001).mean()
-    assert change(aging=2e-15) == pytest.approx(2e-15 * (run - calibration), rel=1e-12)
+    assert change(aging=2e-15) == near(2e-15 * (run - calibration), rel=1e-12)
 
 
 def test_flicker_and_white_add_in_quadrature_and_ageing_on_top() -> None:
     parts = {"white": 3e-12, "flicker": 1e-12, "aging": 1e-15}
     alone = {name: change(**{name: value}) for name, value in parts.items()}
-    assert change(**parts) == pytest.approx(np.hypot(alone["white"], alone["flicker"]) + alone["aging"], rel=1e-12)
+    assert change(**parts) == near(np.hypot(alone["white"], alone["flicker"]) + alone["aging"], rel=1e-12)
 
 
-@pytest.mark.parametrize(("error", "frequency", "time", "expected"), [  # by = regression
-    (1e-4, 14e9, 250e-6, 7.876718e-10), (1e-4, 14e9, 1e-3, 1.969179e-10), (1e-3, 28e9, 10e-3, 3.115651e-11)])
+@pytest.mark.parametrize(
+    ("error", "frequency", "time", "expected"),
+    [  # by = regression
+        (1e-4, 14e9, 250e-6, 7.876718e-10),
+        (1e-4, 14e9, 1e-3, 1.969179e-10),
+        (1e-3, 28e9, 10e-3, 3.115651e-11),
+    ],
+)
 def test_required_stability(error: float, frequency: float, time: float, expected: float) -> None:
-    required = clock.required_stability(source_share=row(1.0), frequency=row(frequency), sequence_time=row(time),
-                                        allowed_sequence_error=row(error))
-    assert required[0] == pytest.approx(expected, rel=1e-6)
+    required = clock.required_stability(
+        source_share=row(1.0), frequency=row(frequency), sequence_time=row(time), allowed_sequence_error=row(error)
+    )
+    assert required[0] == near(expected, rel=1e-6)
 
 
 def test_required_stability_gives_back_the_error_that_it_was_made_from() -> None:
     # phase 2 pi f T sqrt2 sigma_y between adjacent averages of length T, error (1 - exp(-phase^2/2))/3
-    required = clock.required_stability(source_share=row(1.0), frequency=row(14e9), sequence_time=row(1e-3),
-                                        allowed_sequence_error=row(0.1))[0]
+    required = clock.required_stability(
+        source_share=row(1.0), frequency=row(14e9), sequence_time=row(1e-3), allowed_sequence_error=row(0.1)
+    )[0]
     phase = 2 * np.pi * 14e9 * 1e-3 * np.sqrt(2) * required
-    assert (1 - np.exp(-(phase**2) / 2)) / 3 == pytest.approx(0.1, rel=1e-12)
+    assert (1 - np.exp(-(phase**2) / 2)) / 3 == near(0.1, rel=1e-12)
 
 
 def test_required_accuracy_shifts_the_qubit_by_its_share_of_the_allowed_noise() -> None:
     required = clock.required_accuracy(source_share=row(0.3), allowed_noise=row(20e3), frequency=row(15e9))
-    assert required[0] * 15e9 == pytest.approx(0.3 * 20e3)
+    assert required[0] * 15e9 == near(0.3 * 20e3)
 
 
 def test_the_run_is_the_sequence_else_the_wait_else_a_shot() -> None:
@@ -159,9 +179,22 @@ def test_axes_of_studies() -> None:
     assert_axes_agree(clock.tenth, deviation_1s=one)
     assert_axes_agree(clock.run_time, sequence_time=row(np.nan, 2, 3), longest_wait=row(1, np.nan, 2), shot_time=row(1))
     assert_axes_agree(clock.averaging_time, shots=row(1000), shot_time=time)
-    assert_axes_agree(clock.clock_change, white=one[:1], flicker=hundred[:1], aging=row(1e-15), run=time, gap=row(1800), averaging=row(0.2))
+    assert_axes_agree(
+        clock.clock_change,
+        white=one[:1],
+        flicker=hundred[:1],
+        aging=row(1e-15),
+        run=time,
+        gap=row(1800),
+        averaging=row(0.2),
+    )
     assert_axes_agree(clock.required_accuracy, source_share=row(0.3), allowed_noise=time, frequency=time)
-    assert_axes_agree(clock.required_stability, source_share=row(0.3), frequency=time, sequence_time=time,
-                      allowed_sequence_error=row(0.1))
+    assert_axes_agree(
+        clock.required_stability,
+        source_share=row(0.3),
+        frequency=time,
+        sequence_time=time,
+        allowed_sequence_error=row(0.1),
+    )
     assert_axes_agree(clock.stability, white=one[:1], sequence_time=time)
     assert_axes_agree(clock.flicker_variance, run=time, gap=row(5), averaging=time)

@@ -62,13 +62,17 @@ def test_an_image_on_another_qubit_is_avoided() -> None:
 
 def test_distance_from_the_band() -> None:
     frequency = row(0.5e9, 3e9, 17e9, 19e9)
-    np.testing.assert_array_equal(tones.band_distance(frequency=frequency, low=row(1e9), high=row(18e9)), [-0.5e9, 2e9, 1e9, -1e9])
+    np.testing.assert_array_equal(
+        tones.band_distance(frequency=frequency, low=row(1e9), high=row(18e9)), [-0.5e9, 2e9, 1e9, -1e9]
+    )
     np.testing.assert_array_equal(tones.band_need(guard=row(50e6), search_window=row(20e6)), [70e6])
 
 
 def test_intermediate_and_loose_tones() -> None:
     frequency, oscillator = row(15.9e9, 16.3e9), row(16e9)
-    np.testing.assert_allclose(tones.intermediate_frequency(frequency=frequency, oscillator=oscillator), [-0.1e9, 0.3e9])
+    np.testing.assert_allclose(
+        tones.intermediate_frequency(frequency=frequency, oscillator=oscillator), [-0.1e9, 0.3e9]
+    )
     loose = {"frequency": frequency, "oscillator": oscillator}
     np.testing.assert_allclose(tones.loose_tone(**loose, carrier_is_loose=row(1.0)) + 0 * frequency, [16e9, 16e9])
     np.testing.assert_allclose(tones.loose_tone(**loose, carrier_is_loose=row(0.0)), [0.1e9, 0.3e9])
@@ -92,5 +96,8 @@ def test_axes_of_studies_of_the_search() -> None:
     for frequency, half_width in ((factor * some, width), (some, factor * width), (factor * some, factor * width)):
         together = tones.local_oscillator(frequency=frequency, in_use=in_use, half_width=half_width)
         frequencies, widths = np.broadcast_to(frequency, (3, 3)), np.broadcast_to(half_width, (3, 1))
-        alone = [tones.local_oscillator(frequency=f, in_use=in_use, half_width=w) for f, w in zip(frequencies, widths, strict=True)]
+        alone = [
+            tones.local_oscillator(frequency=f, in_use=in_use, half_width=w)
+            for f, w in zip(frequencies, widths, strict=True)
+        ]
         np.testing.assert_array_equal(together, alone)

@@ -1,0 +1,1 @@
+"""Benchmarks: each prints a ratio to a floor that is timed in the same run, in turns."""

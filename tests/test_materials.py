@@ -1,0 +1,167 @@
+"""Shipped materials: isotopes against published tables, defaults against their ranges, a source for every value."""
+
+from __future__ import annotations
+
+import tomllib
+from pathlib import Path
+
+import numpy as np
+import periodictable
+import pytest
+
+from planner.constants import BOHR_MAGNETON, MICRO_EV
+from planner.kinds import CHARGE_NOISE, COUNT, DISPLACEMENT, FRACTION, RELATIVE_NOISE, Kind, parse
+from planner.materials import LATER, Nucleus, Sourced, edition, isotope_fraction, material, material_titles
+from planner.references import references
+
+TABLE = tomllib.loads((Path(__file__).parents[1] / "planner" / "data" / "materials.toml").read_text(encoding="utf-8"))
+KIND_OF = {
+    "spinful_fraction": FRACTION, "nuclei": COUNT, "barrier_germanium": FRACTION, "barrier_share": FRACTION,
+    "barrier_nuclei": COUNT, "barrier_spinful": FRACTION, "charge_noise": CHARGE_NOISE, "displacement": DISPLACEMENT,
+    "relative_noise": RELATIVE_NOISE,
+}  # fmt: skip
+NAMES = sorted(material_titles())
+
+
+def kind_of(key: str) -> Kind:
+    return KIND_OF[key.removeprefix("model.")]
+
+
+def number(key: str, text: str) -> float:
+    value = parse(kind_of(key), text).value
+    assert isinstance(value, float)
+    return value
+
+
+def default(name: str, key: str) -> float:
+    return number(key, material(name).values[f"model.{key}"].text)
+
+
+def every_source() -> list[tuple[str, Sourced]]:
+    """Every sourced value of every material under a name for messages."""
+    found = [(f"{name} {key}", source) for name in NAMES for key, source in material(name).values.items()]
+    nuclei = [(name, nucleus) for name in NAMES for nucleus in (*material(name).nuclei, material(name).barrier)]
+    return found + [(f"{name} {nucleus.isotope}", nucleus.source) for name, nucleus in nuclei]
+
+
+@pytest.mark.parametrize(
+    ("isotope", "spin", "published"),
+    [
+        # C4. Fractions: NIST Atomic Weights and Isotopic Compositions (IUPAC 2009); spins: any table of nuclear moments
+        # (Stone, INDC(NDS)-0794, from memory)
+        ("29Si", 1 / 2, 0.04685),
+        ("73Ge", 9 / 2, 0.0775),
+        ("69Ga", 3 / 2, 0.60108),
+        ("71Ga", 3 / 2, 0.39892),
+        ("75As", 3 / 2, 1.0),
+    ],
+)
+def test_isotopes_are_those_of_nist(isotope: str, spin: float, published: float) -> None:
+    assert isotope_fraction(isotope) == (spin, published)
+
+
+@pytest.mark.parametrize(
+    ("isotope", "tolerance"), [("29Si", 5e-3), ("73Ge", 2e-2), ("69Ga", 1e-4), ("71Ga", 1e-4), ("75As", 1e-4)]
+)
+def test_isotopes_agree_with_a_later_table(isotope: str, tolerance: float) -> None:
+    # periodictable follows a newer IUPAC table than NIST, hence the tolerances of 29Si and 73Ge
+    mass, symbol = int(isotope[:2]), isotope[2:]
+    per_cent = getattr(periodictable, symbol)[mass].abundance
+    assert isotope_fraction(isotope)[1] == pytest.approx(per_cent / 100, rel=tolerance)
+
+
+def test_spins_are_half_integer_as_the_odd_mass_numbers_ask() -> None:
+    for isotope in TABLE["isotope"]:
+        spin, _ = isotope_fraction(isotope)
+        assert int(isotope[:2]) % 2 == 1 and (2 * spin) % 2 == 1
+
+
+def test_gaas_weights_are_twice_the_fractions_on_each_sublattice() -> None:
+    # sigma^2 = (2/N) sum x_j (A_j^cell)^2 I(I+1)/3 with x_j per sublattice and N all atoms
+    for nucleus in material("gaas").nuclei:
+        assert nucleus.weight == pytest.approx(2 * isotope_fraction(nucleus.isotope)[1], rel=1e-12)
+
+
+def test_gaas_couplings_make_the_largest_overhauser_field() -> None:
+    # E_max = sum x_j A_j I_j: 132.46 ueV (by = regression), 5.2 T at g = 0.44; Paget et al. 1977 are quoted with 5.3 T
+    # (from memory)
+    host = material("gaas")
+    largest = sum(n.weight / 2 * n.coupling * n.spin for n in host.nuclei)
+    assert largest / MICRO_EV == pytest.approx(132.463314, rel=1e-5)
+    assert largest / (0.44 * BOHR_MAGNETON) == pytest.approx(5.3, rel=0.03)
+
+
+def test_moment_of_one_nucleus() -> None:
+    one = Nucleus(isotope="73Ge", spin=4.5, weight=0.5, coupling=2.0, source=every_source()[0][1])
+    assert one.moment == pytest.approx(0.5 * 4 * 4.5 * 5.5 / 3)
+
+
+@pytest.mark.parametrize("name", NAMES)
+def test_every_default_is_read_and_lies_in_its_range(name: str) -> None:
+    for key, source in material(name).values.items():
+        low, value, high = (number(key, text or source.text) for text in (source.low, source.text, source.high))
+        assert low <= value <= high, key
+        assert (source.low is None) == (source.high is None), key
+
+
+def test_every_value_has_a_status_and_a_known_reference() -> None:
+    for where, source in every_source():
+        assert source.reference in references(), where
+        assert source.status in ("read", "computed", "from memory"), where
+    for isotope, entry in TABLE["isotope"].items():
+        assert entry["fraction"]["reference"] in references(), isotope
+
+
+def test_every_material_brings_a_default_for_the_whole_model() -> None:
+    for name in NAMES:
+        holes_only = set() if material(name).hole else {"model.relative_noise"}
+        assert {f"model.{key}" for key in KIND_OF} - holes_only == set(material(name).values), name
+
+
+def test_natural_hosts_hold_the_natural_fraction() -> None:
+    assert default("si-sige-natural", "spinful_fraction") == pytest.approx(isotope_fraction("29Si")[1])
+    assert default("ge-sige-natural", "spinful_fraction") == pytest.approx(isotope_fraction("73Ge")[1])
+    assert default("si-sige-800ppm", "spinful_fraction") == pytest.approx(800e-6)
+    assert default("gaas", "spinful_fraction") == 1.0
+    for name in NAMES:
+        assert default(name, "barrier_spinful") == pytest.approx(isotope_fraction("73Ge")[1])
+
+
+def test_only_silicon_germanium_wells_have_a_barrier_share() -> None:
+    shares = {name: default(name, "barrier_share") for name in NAMES}
+    assert {name for name, share in shares.items() if share > 0} == {n for n in NAMES if n.startswith("si-sige")}
+
+
+def test_carriers_and_valleys() -> None:
+    assert {name for name in NAMES if material(name).hole} == {"ge-sige-natural"}
+    assert {name for name in NAMES if material(name).valleys} == {"si-sige-natural", "si-sige-800ppm"}
+
+
+def atoms(*, mass: float, orbital_mev: float, thickness: float, lattice: float) -> float:
+    """Participation number of a Gaussian dot in an infinite well: n_at 2 pi l^2 (2 w / 3), lengths in nm."""
+    squared = 0.0761996422e3 / (mass * orbital_mev)  # l^2 = hbar^2/(m* E), hbar^2/m_e = 0.0762 eV nm^2
+    return 8 / lattice**3 * 2 * np.pi * squared * 2 * thickness / 3
+
+
+@pytest.mark.parametrize(
+    ("name", "mass", "lattice", "orbital_mev", "thickness"),
+    [
+        # effective masses and sizes from memory; lattice constants 0.5431, 0.5658, 0.5653 nm from memory (any handbook)
+        ("si-sige-natural", 0.19, 0.5431, (1.0, 2.0), (5.0, 8.0)),
+        ("ge-sige-natural", 0.06, 0.5658, (1.0, 2.0), (16.0, 20.0)),
+        ("gaas", 0.067, 0.5653, (1.0, 2.0), (10.0, 10.0)),
+    ],
+)
+def test_default_number_of_nuclei_is_that_of_a_plausible_dot(
+    name: str, mass: float, lattice: float, orbital_mev: tuple[float, float], thickness: tuple[float, float]
+) -> None:
+    few = atoms(mass=mass, orbital_mev=orbital_mev[1], thickness=thickness[0], lattice=lattice)
+    many = atoms(mass=mass, orbital_mev=orbital_mev[0], thickness=thickness[1], lattice=lattice)
+    assert few <= default(name, "nuclei") <= many
+
+
+def test_materials_of_a_later_edition_are_named_but_not_shipped() -> None:
+    assert not set(LATER) & set(NAMES)
+    assert edition().count(".") == 1
+    with pytest.raises(KeyError):
+        material(LATER[0])
