@@ -1,11 +1,18 @@
-"""The commands: each reads plans, evaluates them and prints a view. Results go to standard output, messages to standard error."""
+"""The commands: each reads plans, evaluates them and prints a view.
+
+Results go to standard output, messages to standard error.
+"""
 
 from __future__ import annotations
 
 import argparse
+import errno
+import io
 import os
+import signal
 import sys
 from collections.abc import Sequence
+from itertools import pairwise
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -15,7 +22,10 @@ if TYPE_CHECKING:
     from planner.planfile import Document
 
 MET, NOT_MET, BAD_INPUT = 0, 1, 2
+KILLED = 128  # plus the number of a signal, as shells say it
+OF_THE_PROGRAM = ("-h", "--help", "--version")
 COMMANDS = ("edit", "check", "report", "words")
+LONGEST_SHOWN = 120  # characters of an argument that a message repeats
 WITH_HELP = "evaluate as if this given were typed; never kept; may be repeated"
 
 
@@ -26,18 +36,46 @@ def main(arguments: Sequence[str] | None = None) -> int:
     if not given:
         parser.print_help()
         return BAD_INPUT
-    if given[0] not in COMMANDS and not given[0].startswith("-"):
+    if given[0] not in (*COMMANDS, *OF_THE_PROGRAM):
+        if _is_misspelt(given[0]):
+            return BAD_INPUT
         given.insert(0, "edit")  # `planner PLAN` is `planner edit PLAN`
     options = parser.parse_args(given)
+    if isinstance(sys.stdout, io.TextIOWrapper):
+        sys.stdout.reconfigure(errors="replace")  # a name that the terminal has no characters for ends no command
     try:
         status: int = options.run(options)
         sys.stdout.flush()
-        return status
-    except BrokenPipeError:  # the reader of our output has gone; nothing is left to say
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-        return BAD_INPUT
+    except OSError as error:
+        return _without_output(error)
     except KeyboardInterrupt:
-        return 130
+        return KILLED + signal.SIGINT
+    return status
+
+
+def _without_output(error: OSError) -> int:
+    """The exit status where the output can't be written: its reader has gone, which needs no word, or its disk is full.
+
+    What else an OSError says is a bug and is raised again: reading and saving turn theirs into sentences.
+    """
+    if not isinstance(error, BrokenPipeError) and error.errno != errno.ENOSPC:
+        raise error
+    os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())  # or Python's last flush would say it again
+    if isinstance(error, BrokenPipeError):
+        return KILLED + signal.SIGPIPE
+    print("the output was not written: its disk is full; free some space or send it elsewhere", file=sys.stderr)
+    return BAD_INPUT
+
+
+def _is_misspelt(word: str) -> bool:
+    """Whether a word is no file and nearly a command; then it says so."""
+    from planner.values import nearest
+
+    hint = nearest(word, list(COMMANDS))
+    if hint and not os.path.lexists(word):
+        print(f"there is no file and no command '{_shown(word)}'{hint}", file=sys.stderr)
+        return True
+    return False
 
 
 def edit(options: argparse.Namespace) -> int:
@@ -60,6 +98,7 @@ def edit(options: argparse.Namespace) -> int:
     from planner.studies.typenext import type_next
     from planner.views.first_screen import first_screen
 
+    print("".join(f"{note}\n" for note in document.ignored), end="", file=sys.stderr)
     evaluation = evaluate(document.plan)
     print("\n".join(first_screen(evaluation, type_next(evaluation))))
     return MET
@@ -70,14 +109,15 @@ def check(options: argparse.Namespace) -> int:
     from planner.evaluate import evaluate
     from planner.views.report import check_lines
 
-    status = MET
-    for position, name in enumerate(options.plans):
+    status, printed = MET, False
+    for name in options.plans:
         document = _document(Path(name), options.with_)
         if document is None:
             status = BAD_INPUT
             continue
         evaluation = evaluate(document.plan)
-        print("\n".join(([""] if position else []) + check_lines(evaluation, name)))
+        print("\n".join(([""] if printed else []) + check_lines(evaluation, _shown(name))))
+        printed = True
         if evaluation.verdict in {"short", "unknown"}:
             status = max(status, NOT_MET)
     return status
@@ -96,7 +136,7 @@ def report(options: argparse.Namespace) -> int:
     if options.format == "json":
         print(report_json(evaluation, options.plan))
     else:
-        print("\n".join(report_text(evaluation, type_next(evaluation), options.plan)))
+        print("\n".join(report_text(evaluation, type_next(evaluation), _shown(options.plan))))
     return MET
 
 
@@ -106,10 +146,11 @@ def words(options: argparse.Namespace) -> int:
 
     lines = dictionary()
     if options.part:
-        found = [index for index, line in enumerate(lines) if options.part in line and not line.startswith(" ")]
-        lines = [line for index in found for line in lines[index:index + 2]]
+        entries = [(line, meaning) for line, meaning in pairwise(lines) if meaning.startswith(" ")]
+        lines = [each for entry in entries if options.part.lower() in entry[0].lower() for each in entry]
         if not lines:
-            print(f"no given, result or margin has '{options.part}' in its name: see 'planner words'", file=sys.stderr)
+            print(f"no given, result or margin has '{_shown(options.part)}' in its name: see 'planner words'",
+                  file=sys.stderr)
             return BAD_INPUT
     print("\n".join(lines))
     return MET
@@ -130,9 +171,9 @@ def _with(document: Document, changes: Sequence[str]) -> Document:
     from dataclasses import replace
 
     from planner.plan import UnknownKey, address_of
-    from planner.soundness import edited
-    from planner.values import GivenError
     from planner.planfile import PlanError
+    from planner.soundness import entered, refuse_new_problems
+    from planner.values import GivenError
 
     plan = document.plan
     wrong = []
@@ -141,26 +182,48 @@ def _with(document: Document, changes: Sequence[str]) -> Document:
         try:
             if not equals:
                 raise GivenError("has no '=': write KEY=VALUE, as magnet.field=350 mT")
-            plan = edited(plan, address_of(plan, key.strip()), text)
+            plan = entered(plan, address_of(plan, key.strip()), text)
         except (GivenError, UnknownKey) as error:
-            wrong.append(f"--with {change}: {error}")
+            wrong.append(f"--with {_shown(change)}: {error}")
+    try:  # held against each other only when all are in: two may fit together and neither alone
+        refuse_new_problems(document.plan, plan)
+    except GivenError as error:
+        wrong.append(f"--with {', '.join(map(_shown, changes))}: {error}")
     if wrong:
         raise PlanError(wrong)
     return replace(document, plan=plan)
 
 
-def _parser() -> argparse.ArgumentParser:
-    parser = argparse.ArgumentParser(
+def _shown(argument: str) -> str:
+    """An argument as a message repeats it: nothing in it acts on the terminal."""
+    from planner.kinds import clean
+
+    return clean(argument if len(argument) <= LONGEST_SHOWN else argument[:LONGEST_SHOWN] + "...")
+
+
+class _Parser(argparse.ArgumentParser):
+    """A parser whose help begins with an example."""
+
+    example = ""
+
+    def format_help(self) -> str:
+        return f"Example: {self.example}\n\n{super().format_help()}"
+
+
+def _parser() -> _Parser:
+    parser = _Parser(
         prog="planner", formatter_class=argparse.RawDescriptionHelpFormatter, usage="planner [COMMAND] PLAN ...",
-        description="Example: planner plans/sq6-03-drafted.toml\n\nPlans one cooldown of a spin-qubit device: edits the plan, "
-        "recomputes frequencies,\nclock accuracy and coherence margins on each edit, and says which fall short.")
+        description="Plans one cooldown of a spin-qubit device: edits the plan, recomputes frequencies,\n"
+        "clock accuracy and coherence margins on each edit, and says which fall short.")
+    parser.example = "planner plans/sq6-03-drafted.toml"
     parser.add_argument("--version", action="version", version=f"planner {__version__}")
-    commands = parser.add_subparsers(title="commands", metavar="COMMAND")
+    commands = parser.add_subparsers(title="commands", metavar="COMMAND", prog="planner")
     _edit_parser(commands)
     one = _command(commands, "check", check, "margins of plans, worst first", "planner check plans/*.toml",
                    "Exit status: 0 all asked margins are met, 1 some are short or unknown, 2 bad input.")
     one.add_argument("plans", nargs="+", metavar="PLAN", help="plan files")
-    one = _command(commands, "report", report, "all results of a plan", "planner report plans/sq6-03.toml --format json",
+    one = _command(commands, "report", report, "all results of a plan",
+                   "planner report plans/sq6-03.toml --format json",
                    "JSON holds every given, result and margin in SI units and full precision.")
     one.add_argument("plan", metavar="PLAN", help="plan file")
     one.add_argument("--format", choices=("text", "json"), default="text", help="text (default) or json")
@@ -170,18 +233,18 @@ def _parser() -> argparse.ArgumentParser:
     return parser
 
 
-def _edit_parser(commands: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
+def _edit_parser(commands: argparse._SubParsersAction[_Parser]) -> None:
     one = _command(commands, "edit", edit, "open a plan in the editor (the command may be left out)",
                    "planner plans/sq6-03-drafted.toml", "Without a terminal it prints what the first screen shows.")
     one.add_argument("plan", metavar="PLAN", help="plan file")
     one.add_argument("--mouse", action="store_true", help="let the program see the mouse")
 
 
-def _command(commands: argparse._SubParsersAction[argparse.ArgumentParser], name: str, run: object, summary: str,
+def _command(commands: argparse._SubParsersAction[_Parser], name: str, run: object, summary: str,
              example: str, more: str) -> argparse.ArgumentParser:
-    parser: argparse.ArgumentParser = commands.add_parser(
-        name, help=summary, formatter_class=argparse.RawDescriptionHelpFormatter,
-        description=f"Example: {example}\n\n{summary[0].upper()}{summary[1:]}. {more}")
+    parser = commands.add_parser(name, help=summary, formatter_class=argparse.RawDescriptionHelpFormatter,
+                                 description=f"{summary[0].upper()}{summary[1:]}. {more}")
+    parser.example = example
     parser.set_defaults(run=run)
     if name != "words":
         parser.add_argument("--with", dest="with_", action="append", default=[], metavar="KEY=VALUE", help=WITH_HELP)

@@ -7,15 +7,15 @@ vector behind it and studies' axes before it. What can't be known is nan and car
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from functools import partial
 from itertools import chain
 from operator import attrgetter, is_not
-from typing import cast
+from typing import Any, cast
 
 import numpy as np
+from numpy.typing import NDArray
 
-from planner.chapters.qubit import Qubit
 from planner.declare import Form, Given, Switch
 from planner.graph import HOST, givens
 from planner.kinds import Quantity
@@ -39,6 +39,10 @@ class Reason:
         table, _, name = self.given.rpartition(".")
         return f"{table}.{self.row}.{name}" if table in ROWS and self.row else self.given
 
+    def of(self, row: str) -> Reason:
+        """The reason with the name of its row, kept where it has one."""
+        return self if self.row else replace(self, row=row)
+
     def __str__(self) -> str:
         if self.text == NOT_TYPED:
             return f"{self.key} {self.text}"
@@ -56,17 +60,30 @@ _NOTHING = Quantity(text="", value=np.nan, tolerance=None, unit="", origin="")
 class Column:
     """One given or result, `values` as described above.
 
+    `table` is the table whose rows these are ("": the plan, which is one row), `trailing` the number of axes behind the rows.
     `why` and `bound` hold, by row, the reason of an unknown and the note of a value that is only an upper bound.
-    `tolerance` (SI, as `values`, None: all exact) and `words` (of a choice, one a row) belong to givens. `of_plan` tells a
-    plan's one row from a qubit's.
+    `tolerance` (SI, as `values`, None: all exact) and `words` (of a choice, one a row, "" where absent) belong to givens;
+    `found` tells a result from what was typed or stands by default.
     """
 
     values: Array
-    of_plan: bool
+    table: str
+    trailing: int = 0
     why: Mapping[int, Reason] = field(default_factory=dict)
     bound: Mapping[int, str] = field(default_factory=dict)
     tolerance: Array | None = None
     words: tuple[str, ...] = ()
+    found: bool = False
+
+    @property
+    def of_plan(self) -> bool:
+        """Whether this is one value of the plan rather than one a row."""
+        return self.table == ""
+
+    @property
+    def has_lead(self) -> bool:
+        """Whether studies' axes stand before the rows."""
+        return self.values.ndim > 1 + self.trailing
 
     @property
     def spread(self) -> Array:
@@ -75,75 +92,92 @@ class Column:
 
     def base(self) -> Array:
         """The values of the plan itself, one a row: the first along every study's axis."""
-        base: Array = self.values.reshape(-1, self.values.shape[-1])[0]
+        base: Array = self.values[(0,) * (self.values.ndim - 1 - self.trailing)]
         return base
 
+    def absent(self) -> NDArray[np.bool_]:
+        """Where there is no number, along studies' axes and rows."""
+        missing = np.isnan(self.values)
+        return np.asarray(missing.any(axis=tuple(range(-self.trailing, 0)))) if self.trailing else missing
+
     def on(self, switch: Switch) -> bool:
-        """Whether a switch on this column is on; off where the column is unknown."""
+        """Whether a switch on this column is on; off where the column is unknown. Without a test: any row is typed."""
+        if switch.on is None:
+            return len(self.why) < int(self.values.shape[-1 - self.trailing])
         if self.words:
             return bool(switch.on(self.words[0]))
         return not self.why and bool(switch.on(float(self.values.flat[0])))
 
 
-def given_column(plan: Plan, key: str, qubits: Sequence[Qubit]) -> Column:
-    """The column of a given, `qubit` givens with one value for each of these rows of the plan."""
+def given_column(plan: Plan, key: str, rows: Sequence[Any]) -> Column:
+    """The column of a given; one of a list of tables has a value for each of these rows of the plan."""
     table, _, name = key.rpartition(".")
-    if table != "qubit":
-        return _column(key, [getattr(plan.chapter(table), name)], unstated(plan, table, name).value, of_plan=True)
-    shared = getattr(plan.all_qubits, name)
+    if table not in ROWS:
+        return _column(plan, key, "", [getattr(plan.chapter(table), name)], unstated(plan, table, name).value)
+    shared = getattr(plan.all_qubits, name) if table == "qubit" else None
     fallback = unstated(plan, table, name).value if shared is None else shared
-    return _column(key, list(map(attrgetter(name), qubits)), fallback, of_plan=False)
+    return _column(plan, key, table, list(map(attrgetter(name), rows)), fallback)
 
 
 def host_columns(plan: Plan) -> dict[str, Column]:
     """What the chosen material says of itself."""
     host = material(plan.chip.material or "")
     numbers = (float(host.hole), float(host.valleys), host.moment, host.barrier.moment)
-    return {key: Column(np.array([number]), of_plan=True) for key, number in zip(HOST, numbers, strict=True)}
+    return {key: Column(np.array([number]), "") for key, number in zip(HOST, numbers, strict=True)}
 
 
-def swept_column(column: Column, values: Array, row: int | None) -> Column:
-    """The column with other values along new leading axes, in one row or (None) in all."""
+def swept_column(column: Column, values: Array, row: int | None, *, zero_unset: bool) -> Column:
+    """The column with other values along new leading axes, in one row or (None) in the plan's.
+
+    A vector's components stand on the last axis of `values`; along a single axis, one number stands for all three. With
+    `zero_unset` a 0 counts as absent.
+    """
+    trailing = column.trailing
     values = np.asarray(values, dtype=float)
-    if row is None:
-        return Column(values[..., None], column.of_plan, tolerance=column.tolerance)
-    spread = np.broadcast_to(column.values, (*values.shape, *column.values.shape)).copy()
-    spread[..., row] = values
-    why = {other: reason for other, reason in column.why.items() if other != row}
-    return Column(spread, column.of_plan, why, tolerance=column.tolerance)
+    values = values[:, None] if trailing and values.ndim == 1 else values
+    values = np.where(values == 0, np.nan, values) if zero_unset else values
+    place = 0 if row is None else row
+    spread = np.empty((*values.shape[:values.ndim - trailing], *column.values.shape))
+    spread[...] = column.values
+    np.moveaxis(spread, -1 - trailing, 0)[place] = values
+    why = {other: reason for other, reason in column.why.items() if other != place}
+    return replace(column, values=spread, why=why)
 
 
-def _column(key: str, stated: list[Value | None], fallback: Value | None, *, of_plan: bool) -> Column:
+def _column(plan: Plan, key: str, table: str, stated: list[Value | None], fallback: Value | None) -> Column:
     given = givens()[key]
     if given.form is not Form.QUANTITY:
-        words = tuple(str(fallback if value is None else value) for value in stated)
-        return Column(np.full(len(stated), np.nan), of_plan, words=words)
-    if not any(map(_is_stated, stated)):  # one value for every row: read it once
-        one = _numbers(key, given, [fallback], of_plan=of_plan)
+        words = (fallback if value is None else value for value in stated)
+        return Column(np.full(len(stated), np.nan), table, words=tuple("" if word is None else str(word) for word in words))
+    size = len(plan.stage) if given.per_stage else max(given.sizes)
+    if not any(map(_is_stated, stated)) and stated:  # one value for every row: read it once
+        one = _numbers(key, given, [fallback], table, size)
         shape = (len(stated), *one.values.shape[1:])
         tolerance = None if one.tolerance is None else np.broadcast_to(one.tolerance, shape)
         why = dict.fromkeys(range(len(stated)), one.why[0]) if one.why else {}
-        return Column(np.broadcast_to(one.values, shape), of_plan, why, tolerance=tolerance)
-    return _numbers(key, given, [fallback if value is None else value for value in stated], of_plan=of_plan)
+        return replace(one, values=np.broadcast_to(one.values, shape), why=why, tolerance=tolerance)
+    return _numbers(key, given, [fallback if value is None else value for value in stated], table, size)
 
 
-def _numbers(key: str, given: Given, entries: Sequence[Value | None], *, of_plan: bool) -> Column:
+def _numbers(key: str, given: Given, entries: Sequence[Value | None], table: str, size: int) -> Column:
     quantities = cast(Sequence[Quantity | None], entries)  # the given is a quantity, so its values are
     absent = [] if all(map(_is_stated, quantities)) else [row for row, entry in enumerate(quantities) if entry is None]
     quantities = [entry or _NOTHING for entry in quantities] if absent else quantities
-    size = max(given.sizes)
-    array = _array(list(map(_VALUE, quantities)), size)
+    scalar = not given.per_stage and size == 1
+    array = _array(list(map(_VALUE, quantities)), size, scalar=scalar)
     if given.zero_unset:
         absent = np.flatnonzero(np.nan_to_num(array) == 0).tolist()
     array[absent] = np.nan
     spreads = list(map(_TOLERANCE, quantities))
-    tolerance = _array([spread or 0.0 for spread in spreads], size) if any(map(_is_stated, spreads)) else None
-    return Column(array, of_plan, dict.fromkeys(absent, Reason(NOT_TYPED, key)), tolerance=tolerance)
+    stated = any(map(_is_stated, spreads))
+    tolerance = _array([spread or 0.0 for spread in spreads], size, scalar=scalar) if stated else None
+    why = dict.fromkeys(absent, Reason(NOT_TYPED, key))
+    return Column(array, table, 0 if scalar else 1, why, tolerance=tolerance)
 
 
-def _array(values: Sequence[float | tuple[float, ...]], size: int) -> Array:
+def _array(values: Sequence[float | tuple[float, ...]], size: int, *, scalar: bool) -> Array:
     """Numbers, or vectors in which one number stands for each component, as an array."""
-    if size == 1:
+    if scalar:
         return np.array(values, dtype=float)
     numbers = chain.from_iterable(value if isinstance(value, tuple) else (value,) * size for value in values)
     return np.fromiter(numbers, dtype=float, count=size * len(values)).reshape(-1, size)

@@ -112,7 +112,8 @@ class Given:
 
     `sizes` are the accepted numbers of components, `options` the words of a choice with a line of explanation each.
     `planned` are words that a later edition will accept. The value must lie above `above`, at or above `least`, below `below` and at or below `most` (SI; None: no bound).
-    `zero_unset`: a 0 counts as absent; `nonzero`: not every component may be 0. `later`: read, checked and written, but no result uses it yet. `example` is a text that would be accepted, `sensible` what people use.
+    `zero_unset`: a 0 counts as absent; `nonzero`: not every component may be 0; `per_stage`: one
+    number for each stage. `later`: read, checked and written, but no result uses it yet. `example` is a text that would be accepted, `sensible` what people use.
     """
 
     form: Form
@@ -131,6 +132,7 @@ class Given:
     most: float | None = None
     zero_unset: bool = False
     nonzero: bool = False
+    per_stage: bool = False
     example: str = ""
     sensible: str = ""
     later: bool = False
@@ -150,18 +152,23 @@ def givens_of(chapter: type) -> dict[str, Given]:
 
 
 class Per(Enum):
-    """What a result is one of."""
+    """What a result is one of: of the plan, or of the rows of this table."""
 
+    PLAN = ""
     QUBIT = "qubit"
-    PLAN = "plan"
+    COIL = "coil"
+    STAGE = "stage"
+    LINE = "line"
+    PART = "part"
+    PAIR = "pair"
 
 
 @dataclass(frozen=True, slots=True)
 class Switch:
-    """A condition on one given of the plan: `on` gets its SI value, or its word for a choice."""
+    """A condition on one given of the plan: `on` gets its SI value, or its word for a choice; None: any row types it."""
 
     key: str
-    on: Callable[[Any], bool]
+    on: Callable[[Any], bool] | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -169,8 +176,8 @@ class Input:
     """Where an argument of a law comes from: the `key` of a given or result, or the tolerance of a given.
 
     `optional`: an unknown is passed on as nan instead of making the result unknown. `word`: 1 where the choice is this
-    word, else 0. `unless`: not needed in rows that type this given. `when`: needed only while the switch is on; the law
-    sees nan otherwise.
+    word, else 0. `unless`: not needed in rows that type this given. `when`: needed only while all of these are on; the
+    law sees nan otherwise.
     """
 
     key: str
@@ -178,7 +185,7 @@ class Input:
     tolerance: bool = False
     word: str = ""
     unless: str = ""
-    when: Switch | None = None
+    when: tuple[Switch, ...] = ()
 
 
 def optional(key: str) -> Input:
@@ -232,7 +239,7 @@ class Derived:
     bound: Bound | None = None
     shown: bool = True
     only: Switch | None = None
-    off: str = ""
+    off: Unknown = Unknown("")
     trailing: tuple[int, ...] = ()
     heading: str = ""
     display: str = ""

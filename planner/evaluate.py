@@ -2,18 +2,19 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator, Mapping
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
 from planner.columns import Column, Reason, given_column, host_columns, swept_column
-from planner.declare import Derived, Input, Lock, Per
-from planner.graph import Graph, graph
+from planner.declare import Derived, Input, Lock
+from planner.graph import Graph, givens, graph
+from planner.kinds import Quantity
 from planner.margins import CLEAR, VERDICTS, Margin, judge
 from planner.physics import Array
-from planner.plan import Address, Plan, Resolved, addresses, key_of, resolved
+from planner.plan import NAMED, ROWS, Address, Plan, Resolved, addresses, key_of, resolved
 from planner.values import number
 
 if TYPE_CHECKING:
@@ -72,17 +73,18 @@ def evaluate(plan: Plan, swept: Mapping[str, Array] | None = None) -> Evaluation
     """Evaluate a plan without problems (`plan.problems`).
 
     `swept` replaces the SI values of givens (`magnet.field`, `qubit.Q1.rabi_frequency`) by arrays, whose axes every result
-    that depends on them then leads with; verdicts are those of the first entry.
+    that depends on them then leads with; a vector's components stand on the last axis. Verdicts are those of the first
+    entry. Raises ValueError for givens that decide which results there are, for words, and for unknown keys.
     """
     wiring = graph()
     roles = given_column(plan, "qubit.role", plan.qubit).words
     rows = tuple(row for row, role in enumerate(roles) if role != "dead")
-    qubits = [plan.qubit[row] for row in rows]
-    names = tuple(str(qubit.name) for qubit in qubits)
-    columns = {key: given_column(plan, key, qubits) for key in wiring.needed} | host_columns(plan)
+    tables = {table: plan.rows(table) for table in ROWS} | {"qubit": tuple(plan.qubit[row] for row in rows)}
+    columns = {key: given_column(plan, key, tables.get(key.partition(".")[0], ())) for key in wiring.needed} | host_columns(plan)
+    names = {table: tuple(str(row.name) for row in rows) for table, rows in tables.items() if table in NAMED} | {"": ("",)}
     for key, values in (swept or {}).items():
         _sweep(columns, key, values, names)
-    used = tuple(row for row, word in enumerate(columns["qubit.role"].words) if word == "use")
+    used = tuple(row for row, role in enumerate(columns["qubit.role"].words) if role == "use")
     scope = _Scope(columns, names, used)
     with np.errstate(invalid="ignore", divide="ignore", over="ignore", under="ignore"):
         for derived in wiring.order:
@@ -90,9 +92,9 @@ def evaluate(plan: Plan, swept: Mapping[str, Array] | None = None) -> Evaluation
             if typed is None or typed.why:
                 columns[derived.key] = scope.column(derived)
     wanted = resolved(plan, WANTED_MARGIN).value
-    assert wanted is not None and not isinstance(wanted, str)
-    margins, not_asked = judge(columns, wiring, used, names, number(wanted))
-    return Evaluation(plan, wiring, rows, names, used, columns, margins, not_asked)
+    assert isinstance(wanted, Quantity)
+    margins, not_asked = judge(columns, wiring.limits, used, names, number(wanted))
+    return Evaluation(plan, wiring, rows, names["qubit"], used, columns, margins, not_asked)
 
 
 def resolve_all(plan: Plan) -> dict[str, Resolved]:
@@ -109,27 +111,28 @@ def too_late(until: Lock | None, passed: str) -> bool:
 
 @dataclass(frozen=True, slots=True)
 class _Scope:
-    """What a result is computed from: the columns so far, the rows' names, and which of them are in use."""
+    """What results are computed from: the columns so far, the names of every table's rows, and the qubits in use."""
 
     columns: dict[str, Column]
-    names: tuple[str, ...]
+    names: Mapping[str, tuple[str, ...]]
     used: tuple[int, ...]
 
     def column(self, derived: Derived) -> Column:
-        of_plan = derived.per is Per.PLAN
-        rows = 1 if of_plan else len(self.names)
+        table, rows, trailing = derived.per.value, len(self.names[derived.per.value]), derived.trailing
         if derived.only is not None and not self.columns[derived.only.key].on(derived.only):
-            nothing = np.full((rows, *derived.trailing), np.nan)
-            return Column(nothing, of_plan, dict.fromkeys(range(rows), Reason(derived.off)))
+            nothing = np.full((rows, *trailing), np.nan)
+            reason = Reason(derived.off.reason, derived.off.given)
+            return Column(nothing, table, len(trailing), dict.fromkeys(range(rows), reason), found=True)
         sources = {name: source for name, source in derived.sources.items() if self.wanted(source)}
         arguments = {name: self.argument(sources.get(name)) for name in derived.inputs}
-        why = self.reasons(sources.values(), of_plan)
-        values = _with_rows(np.asarray(derived.law(**arguments)), rows, derived.trailing)
-        values, why = _explained(derived, values, why)
-        return Column(values, of_plan, why, self.bounds(derived, sources.values(), why))
+        why = self.reasons(sources.values(), table)
+        values = _with_rows(np.asarray(derived.law(**arguments)), rows, trailing)
+        values = self.without_missing(values, sources.values(), table, len(trailing))
+        values = _explained(derived, values, why)
+        return Column(values, table, len(trailing), why, self.bounds(derived, sources.values(), why), found=True)
 
     def wanted(self, source: Input) -> bool:
-        return source.when is None or self.columns[source.when.key].on(source.when)
+        return all(self.columns[switch.key].on(switch) for switch in source.when)
 
     def argument(self, source: Input | None) -> Array:
         if source is None:
@@ -139,47 +142,69 @@ class _Scope:
             return np.array([float(word == source.word) for word in column.words])
         return column.spread if source.tolerance else column.values
 
-    def reasons(self, sources: Iterable[Input], of_plan: bool) -> dict[int, Reason]:
+    def without_missing(self, values: Array, sources: Iterable[Input], table: str, trailing: int) -> Array:
+        """The values with nan wherever a source that is needed there has none, along studies' axes too."""
+        for source in sources:
+            column = self.columns[source.key]
+            if source.optional or source.word or not (column.why or column.has_lead):
+                continue
+            absent = column.absent()
+            if column.table not in {"", table}:
+                absent = absent[..., list(self.counted(column.table))].any(axis=-1, keepdims=True)
+            if source.unless:
+                absent = absent & np.isnan(self.columns[source.unless].values)
+            if absent.any():
+                values = np.where(absent[(...,) + (None,) * trailing], np.nan, values)
+        return values
+
+    def counted(self, table: str) -> Sequence[int]:
+        """Rows of a table that a result of another table rests on: qubits in use, every row of the others."""
+        return self.used if table == "qubit" else range(len(self.names[table]))
+
+    def reasons(self, sources: Iterable[Input], table: str) -> dict[int, Reason]:
         why: dict[int, Reason] = {}
         for source in sources:
-            if not source.optional and self.columns[source.key].why:
-                for row, reason in self.spread(source, of_plan):
+            if not source.optional and not source.word and self.columns[source.key].why:
+                for row, reason in self.spread(source, table):
                     why.setdefault(row, reason)
         return why
 
-    def spread(self, source: Input, of_plan: bool) -> Iterator[tuple[int, Reason]]:
+    def spread(self, source: Input, table: str) -> Iterator[tuple[int, Reason]]:
         """The reasons of one source, on the rows of the result that need it."""
         column = self.columns[source.key]
-        if column.of_plan:
-            exempt = self.exempt(source.unless)
-            yield from ((row, column.why[0]) for row in range(1 if of_plan else len(self.names)) if row not in exempt)
-        elif of_plan:
-            row = next((row for row in self.used if row in column.why), None)
-            if row is not None:
-                reason = column.why[row]
-                yield 0, reason if reason.row else Reason(reason.text, reason.given, self.names[row])
-        else:
-            exempt = self.exempt(source.unless)
+        exempt = self.exempt(source.unless, table)
+        if column.table == table:
             yield from ((row, reason) for row, reason in column.why.items() if row not in exempt)
+            return
+        if column.table == "":
+            reason = column.why[0]
+        else:
+            row = next((row for row in self.counted(column.table) if row in column.why), None)
+            if row is None:
+                return
+            reason = column.why[row].of(self.names[column.table][row])
+        yield from ((row, reason) for row in range(len(self.names[table])) if row not in exempt)
 
-    def exempt(self, key: str) -> frozenset[int]:
+    def exempt(self, key: str, table: str) -> frozenset[int]:
         """Rows that type this given and so don't need the other source."""
         if not key:
             return frozenset()
         column = self.columns[key]
-        return frozenset(row for row in range(len(self.names)) if (0 if column.of_plan else row) not in column.why)
+        rows = range(len(self.names[table]))
+        return frozenset(row for row in rows if (0 if column.table == "" else row) not in column.why)
 
     def bounds(self, derived: Derived, sources: Iterable[Input], why: Mapping[int, Reason]) -> dict[int, str]:
         """Notes by row: of this result's own bound, and of the bounds it rests on."""
-        notes: dict[int, str] = {}
+        table, notes = derived.per.value, dict[int, str]()
         if derived.bound is not None:
             arguments = {name: self.columns[key].values for name, key in derived.bound.inputs.items()}
-            flags = _with_rows(np.asarray(derived.bound.where(**arguments)), len(self.names), ())
-            notes = {int(row): derived.bound.note for row in np.flatnonzero(flags.reshape(-1, len(self.names))[0])}
+            rows = len(self.names[table])
+            flags = _with_rows(np.asarray(derived.bound.where(**arguments)), rows, ())
+            notes = {int(row): derived.bound.note for row in np.flatnonzero(flags.reshape(-1, rows)[0])}
         for source in sources:
             column = self.columns[source.key]
-            if column.bound and derived.per is Per.QUBIT:
-                exempt = self.exempt(source.unless)
+            if column.bound and column.table == table:
+                exempt = self.exempt(source.unless, table)
                 notes = {row: note for row, note in column.bound.items() if row not in exempt} | notes
         return {row: note for row, note in notes.items() if row not in why}
 
@@ -190,25 +215,38 @@ def _with_rows(values: Array, rows: int, trailing: tuple[int, ...]) -> Array:
     return values if values.shape == shape else np.broadcast_to(values, shape)
 
 
-def _explained(derived: Derived, values: Array, why: dict[int, Reason]) -> tuple[Array, dict[int, Reason]]:
-    """Rows with a reason set to nan, and a law's own nan given its reason. A nan that nobody explains is a bug."""
+def _explained(derived: Derived, values: Array, why: dict[int, Reason]) -> Array:
+    """The values with nan for infinities, and a reason in `why` for each row of the plan's own that a law left unknown.
+
+    A nan that nobody explains is a bug.
+    """
     finite = np.isfinite(values)
-    if not why and finite.all():
-        return values, why
-    axes = tuple(range(-len(derived.trailing), 0))
-    known = finite.all(axis=axes) if axes else finite
-    for row in np.flatnonzero(~known.reshape(-1, known.shape[-1])[0]):
+    if finite.all():
+        return values
+    rows = finite.reshape(-1, len(values.shape) and values.shape[values.ndim - 1 - len(derived.trailing)],
+                          int(np.prod(derived.trailing)))[0].all(axis=-1)
+    for row in np.flatnonzero(~rows):
         if int(row) not in why:
-            if derived.unknown is None:
-                raise AssertionError(f"{derived.key} is not a number although everything it needs is known")
-            why[int(row)] = Reason(derived.unknown.reason, derived.unknown.given)
-    known = np.array(known)
-    known[..., list(why)] = False
-    return np.where(known.reshape(known.shape + (1,) * len(axes)), values, np.nan), why
+            why[int(row)] = _own_reason(derived, infinite=bool(np.isinf(values).any()))
+    return np.where(finite, values, np.nan)
 
 
-def _sweep(columns: dict[str, Column], key: str, values: Array, names: tuple[str, ...]) -> None:
+def _own_reason(derived: Derived, *, infinite: bool) -> Reason:
+    """Why a law found no number although all it needs is known."""
+    if derived.unknown is not None:
+        return Reason(derived.unknown.reason, derived.unknown.given)
+    if infinite:
+        return Reason("is beyond all sensible numbers: check what was typed")
+    raise AssertionError(f"{derived.key} is not a number although everything it needs is known")
+
+
+def _sweep(columns: dict[str, Column], key: str, values: Array, names: Mapping[str, tuple[str, ...]]) -> None:
     table, _, name = key.rpartition(".")
     head, _, row = table.partition(".")
     column_key = f"{head}.{name}" if row else key
-    columns[column_key] = swept_column(columns[column_key], values, names.index(row) if row else None)
+    column = columns.get(column_key)
+    if column is None or column.words or column_key in graph().switched or (row and row not in names[head]):
+        raise ValueError(f"{key} can't be swept: evaluate one plan for each value")
+    zero_unset = column_key in givens() and givens()[column_key].zero_unset
+    place = names[head].index(row) if row else None
+    columns[column_key] = swept_column(column, values, place, zero_unset=zero_unset)

@@ -8,7 +8,20 @@ from difflib import get_close_matches
 from functools import cache
 from graphlib import CycleError, TopologicalSorter
 
-from planner.chapters import calibration, chip, clock, coherence, larmor, magnet, model, noise, source, thermal, valley, workload
+from planner.chapters import (
+    calibration,
+    chip,
+    clock,
+    coherence,
+    larmor,
+    magnet,
+    model,
+    noise,
+    source,
+    thermal,
+    valley,
+    workload,
+)
 from planner.declare import Compare, Derived, Given, Input, Limit, Lock, Missing, Nature, law_of
 from planner.kinds import ENERGY_SQUARED, NUMBER, Kind
 from planner.plan import ROWS, SECTIONS, table_givens
@@ -29,19 +42,33 @@ class WiringError(Exception):
 
 @dataclass(frozen=True, slots=True)
 class Graph:
-    """Results in an order in which each can be computed, the limits, what lies upstream of every result, the givens that
-    any of these needs, and the latest lock of the choices that act on each side of a comparison."""
+    """The checked declarations: results in an order in which each can be computed, and the limits.
+
+    `upstream` holds all that each result depends on, `needed` the givens that anything here uses, `switched` the keys of
+    switches. `parents` is one step of `upstream`.
+    """
 
     order: tuple[Derived, ...]
     limits: tuple[Limit, ...]
     upstream: Mapping[str, frozenset[str]]
     needed: tuple[str, ...]
-    locks: Mapping[str, Lock | None]
+    switched: frozenset[str]
+    parents: Mapping[str, frozenset[str]]
 
-    def until(self, compares: Sequence[Compare]) -> Lock | None:
-        """The latest lock among the choices upstream of these comparisons; None where no choice acts on them."""
-        locks = (self.locks[end] for compare in compares for end in (compare.allowed, compare.expected))
-        return max((lock for lock in locks if lock is not None), default=None)
+    def until(self, compares: Sequence[Compare], typed: frozenset[str] = frozenset()) -> Lock | None:
+        """The latest lock among the choices that act on these comparisons; None where no choice does.
+
+        `typed` are the givens that a plan types although they could be found: what they would be found from does not act.
+        """
+        seen: set[str] = set()
+        ahead = [end for compare in compares for end in (compare.allowed, compare.expected)]
+        while ahead:
+            key = ahead.pop()
+            if key not in seen:
+                seen.add(key)
+                ahead.extend(() if key in typed else self.parents.get(key, ()))
+        choices = (given for key in seen if (given := givens().get(key)) is not None and given.nature is Nature.CHOICE)
+        return max((given.locks for given in choices if given.locks is not None), default=None)
 
 
 @cache
@@ -56,7 +83,7 @@ def build(deriveds: tuple[Derived, ...], limits: tuple[Limit, ...]) -> Graph:
     if misfits:
         raise WiringError("\n".join(misfits))
     by_key = {derived.key: derived for derived in deriveds}
-    parents = {key: frozenset(_parents(derived)) - {key} for key, derived in by_key.items()}
+    parents = {key: frozenset(_parents(derived)) for key, derived in by_key.items()}
     try:
         order = [key for key in TopologicalSorter(parents).static_order() if key in by_key]
     except CycleError as error:
@@ -65,9 +92,14 @@ def build(deriveds: tuple[Derived, ...], limits: tuple[Limit, ...]) -> Graph:
     for key in order:
         upstream[key] = parents[key].union(*(upstream.get(parent, frozenset()) for parent in parents[key]))
     used = set().union(*upstream.values(), *map(_limit_keys, limits))
-    ends = {end for limit in limits for compare in limit.compares for end in (compare.allowed, compare.expected)}
     return Graph(tuple(by_key[key] for key in order), limits, upstream, tuple(key for key in givens() if key in used),
-                 {end: _latest_lock({end, *upstream.get(end, ())}) for end in ends})
+                 frozenset(_switches(deriveds, limits)), parents)
+
+
+@cache
+def repairable_until(compares: tuple[Compare, ...], typed: frozenset[str]) -> Lock | None:
+    """`Graph.until` of the shipped chapters, worked out once."""
+    return graph().until(compares, typed)
 
 
 @cache
@@ -78,19 +110,33 @@ def givens() -> dict[str, Given]:
 
 
 def _parents(derived: Derived) -> Iterator[str]:
-    for source in derived.sources.values():
-        yield source.key
-        if source.when is not None:
-            yield source.when.key
-        if source.unless:
-            yield source.unless
-        if source.key.startswith("host."):
+    for key in (*_asked_keys(derived), *(entry.key for entry in derived.sources.values())):
+        yield key
+        given = givens().get(key)
+        if key.startswith("host.") or (given is not None and given.missing is Missing.MATERIAL):
             yield MATERIAL
-        given = givens().get(source.key)
-        if given is not None and given.missing is Missing.MATERIAL:
-            yield MATERIAL
+
+
+def _switches(deriveds: tuple[Derived, ...], limits: tuple[Limit, ...]) -> Iterator[str]:
+    for derived in deriveds:
+        yield from (switch.key for entry in derived.sources.values() for switch in entry.when)
+        if derived.only is not None:
+            yield derived.only.key
+    for limit in limits:
+        asked = (limit.asked, *(compare.when for compare in limit.compares))
+        yield from (switch.key for switch in asked if switch is not None)
+
+
+def _asked_keys(derived: Derived) -> Iterator[str]:
+    """Keys that decide whether the result is computed and which arguments it needs."""
+    for entry in derived.sources.values():
+        yield from (switch.key for switch in entry.when)
+        if entry.unless:
+            yield entry.unless
     if derived.only is not None:
         yield derived.only.key
+    if derived.bound is not None:
+        yield from derived.bound.inputs.values()
 
 
 def _limit_keys(limit: Limit) -> set[str]:
@@ -101,47 +147,50 @@ def _limit_keys(limit: Limit) -> set[str]:
     return keys
 
 
-def _latest_lock(keys: set[str]) -> Lock | None:
-    choices = (given for key in keys if (given := givens().get(key)) is not None and given.nature is Nature.CHOICE)
-    return max((given.locks for given in choices if given.locks is not None), default=None)
-
-
 def _misfits(deriveds: tuple[Derived, ...]) -> Iterator[str]:
-    keys = [derived.key for derived in deriveds]
-    yield from (f"{key}: declared twice" for key in sorted({key for key in keys if keys.count(key) > 1}))
+    yield from _twice([derived.key for derived in deriveds])
     kinds = _kinds(deriveds)
     for derived in deriveds:
         declared = law_of(derived.law)
         given = givens().get(derived.key)
         if given is not None and (given.missing is not Missing.FOUND or given.kind != declared.result):
             yield f"{derived.key}: is a given, of another kind or not found from results"
+        for key in _asked_keys(derived):
+            yield from _unknown_key(f"{derived.key}: depends on", key, kinds)
         if set(derived.inputs) != set(declared.arguments):
             yield f"{derived.key}: {declared.name} takes {sorted(declared.arguments)}, gets {sorted(derived.inputs)}"
             continue
-        for name, source in derived.sources.items():
-            yield from _input_misfits(derived.key, name, source, declared.arguments[name], kinds)
+        for name, entry in derived.sources.items():
+            yield from _input_misfits(derived.key, name, entry, declared.arguments[name], kinds)
 
 
 def _input_misfits(key: str, name: str, source: Input, wanted: Kind, kinds: Mapping[str, Kind]) -> Iterator[str]:
-    if source.key not in kinds:
-        close = get_close_matches(source.key, list(kinds), n=1)
-        yield f"{key}: {name} comes from unknown '{source.key}'" + (f", did you mean {close[0]}?" if close else "")
-        return
-    offered = NUMBER if source.word else kinds[source.key]
+    yield from _unknown_key(f"{key}: {name} comes from", source.key, kinds)
+    offered = NUMBER if source.word else kinds.get(source.key, wanted)
     if offered != wanted:
         yield f"{key}: {name} is a {wanted.name}, {source.key} is a {offered.name}"
 
 
 def _limit_misfits(deriveds: tuple[Derived, ...], limits: tuple[Limit, ...]) -> Iterator[str]:
+    yield from _twice([f"margin {limit.name}" for limit in limits])
     kinds = _kinds(deriveds)
     for limit in limits:
+        for key in sorted(_limit_keys(limit)):
+            yield from _unknown_key(f"margin {limit.name}:", key, kinds)
         for compare in limit.compares:
             for end in (compare.allowed, compare.expected):
-                if end not in kinds:
-                    close = get_close_matches(end, list(kinds), n=1)
-                    yield f"margin {limit.name}: unknown '{end}'" + (f", did you mean {close[0]}?" if close else "")
-                elif kinds[end].si != compare.kind.si:
+                if end in kinds and kinds[end].si != compare.kind.si:
                     yield f"margin {limit.name}: {end} is a {kinds[end].name}, compared as {compare.kind.name}"
+
+
+def _twice(names: Sequence[str]) -> Iterator[str]:
+    yield from (f"{name}: declared twice" for name in sorted({name for name in names if names.count(name) > 1}))
+
+
+def _unknown_key(where: str, key: str, kinds: Mapping[str, Kind]) -> Iterator[str]:
+    if key not in kinds:
+        close = get_close_matches(key, list(kinds), n=1)
+        yield f"{where} unknown '{key}'" + (f", did you mean {close[0]}?" if close else "")
 
 
 def _kinds(deriveds: tuple[Derived, ...]) -> dict[str, Kind]:

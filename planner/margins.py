@@ -10,8 +10,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from planner.columns import Column, Reason
-from planner.declare import Compare, Limit, Lock, Per
-from planner.graph import Graph
+from planner.declare import Compare, Limit, Lock, Missing, Per
+from planner.graph import givens, repairable_until
 from planner.physics import Array
 
 LARGEST_MARGIN = 1e6
@@ -81,17 +81,19 @@ class Margin:
         return self.code, self.value or 0.0
 
 
-def judge(columns: Mapping[str, Column], graph: Graph, used: Sequence[int], names: Sequence[str],
+def judge(columns: Mapping[str, Column], limits: Sequence[Limit], used: Sequence[int], names: Mapping[str, tuple[str, ...]],
           wanted: float) -> tuple[tuple[Margin, ...], dict[str, str]]:
     """The asked margins over the rows in use, and the reasons of those that are not asked."""
+    typed = frozenset(key for key, given in givens().items()
+                      if given.missing is Missing.FOUND and key in columns and not columns[key].found)
     rows, one = np.array(used, dtype=np.intp), np.zeros(1, dtype=np.intp)
     margins: list[Margin] = []
     not_asked: dict[str, str] = {}
-    for limit in graph.limits:
+    for limit in limits:
         if limit.asked is not None and not columns[limit.asked.key].on(limit.asked):
             not_asked[limit.name] = limit.not_asked
         else:
-            margins.append(_margin(columns, graph, limit, rows if limit.per is Per.QUBIT else one, names, wanted))
+            margins.append(_margin(columns, typed, limit, rows if limit.per is Per.QUBIT else one, names, wanted))
     return tuple(margins), not_asked
 
 
@@ -100,10 +102,11 @@ def number_or_none(value: float) -> float | None:
     return None if np.isnan(value) else float(value)
 
 
-def _margin(columns: Mapping[str, Column], graph: Graph, limit: Limit, rows: Rows, names: Sequence[str],
+def _margin(columns: Mapping[str, Column], typed: frozenset[str], limit: Limit, rows: Rows, names: Mapping[str, tuple[str, ...]],
             wanted: float) -> Margin:
     compares = [compare for compare in limit.compares if compare.when is None or columns[compare.when.key].on(compare.when)]
     judged = [_judged(columns, limit, compare, rows, wanted) for compare in compares]
+    judged = [one for one in judged if (one.codes != _NOT_MADE).any()] or judged[:1]
     ranks = [_rank(one) for one in judged]
     every, margins, codes = ranks[0], judged[0].margins, judged[0].codes
     for one, rank in zip(judged[1:], ranks[1:], strict=True):  # the worse comparison of each row
@@ -115,9 +118,9 @@ def _margin(columns: Mapping[str, Column], graph: Graph, limit: Limit, rows: Row
     chosen = judged[min(range(len(judged)), key=lambda place: float(ranks[place][worst]))]
     ends = [columns[key] for key in (chosen.compare.allowed, chosen.compare.expected)]
     of_plan = all(column.of_plan for column in ends)
-    return Margin(limit, rows, margins, codes, worst, "" if of_plan else names[row], chosen.compare,
+    return Margin(limit, rows, margins, codes, worst, "" if of_plan else names["qubit"][row], chosen.compare,
                   number_or_none(chosen.allowed[worst]), number_or_none(chosen.expected[worst]),
-                  _reason(ends, row, names), _note(ends, row), graph.until(compares))
+                  _reason(ends, row, names), _note(ends, row) if margins[worst] < 1 else "", repairable_until(tuple(one.compare for one in judged), typed))
 
 
 def _rank(judged: Judged) -> Array:
@@ -156,11 +159,11 @@ def _bounded(ends: Sequence[Column], rows: Rows) -> NDArray[np.bool_]:
     return bounded
 
 
-def _reason(ends: Sequence[Column], row: int, names: Sequence[str]) -> Reason | None:
+def _reason(ends: Sequence[Column], row: int, names: Mapping[str, tuple[str, ...]]) -> Reason | None:
     for column in ends:
         reason = column.why.get(0 if column.of_plan else row)
         if reason is not None:
-            return reason if column.of_plan or reason.row else Reason(reason.text, reason.given, names[row])
+            return reason if column.of_plan else reason.of(names[column.table][row])
     return None
 
 

@@ -12,21 +12,26 @@ from typing import Any
 
 from planner import durable, tomltext
 from planner.declare import Given
-from planner.kinds import clean
+from planner.kinds import MOST_COUNTED, clean
 from planner.plan import ROWS, SECTIONS, TABLES, Plan, table_givens, with_rows, with_section
 from planner.soundness import problems
-from planner.values import GivenError, Value, nearest, read_value
 from planner.tomltext import Change, InsertRow, RemoveRow
+from planner.values import GivenError, Value, nearest, read_value
 
 LARGEST_FILE = 1_000_000  # bytes
 MOST_ROWS = 2000
+MOST_SENTENCES = 200  # no file has so many errors of its own; beyond, something else was read as a plan
 FORMAT = 1
+TOO_DEEP = "the file is nested too deeply: a plan has tables and values only"
+# Fifty dotted names in a row, which the TOML parser takes minutes for, and more digits than Python reads.
+_DEEP_KEY = re.compile(r"""(?<![\w\-"'])(?:(?:[\w-]+|"[^"\n]*"|'[^'\n]*')[ \t]*\.[ \t]*){50}""")
+_ENDLESS = re.compile(r"\d[\d_]{4000,}")
 # Keys after which a new file leaves a blank line: git can't merge changes on adjacent lines.
 GROUP_ENDS = frozenset({
-    "format", "note", "fridge_run", "magnet.azimuth", "magnet.drift_persistent", "magnet.noise_persistent", "magnet.since_ramp",
-    "clock.aging", "source.guard", "source.if_half_width", "chip.drive_leak", "model.nuclei", "model.barrier_spinful",
-    "workload.refocusing_pulses", "workload.accumulation", "workload.source_share", "workload.allowed_readout_error",
-    "calibration.wait", "calibration.shot_time",
+    "format", "note", "fridge_run", "magnet.azimuth", "magnet.drift_persistent", "magnet.noise_persistent",
+    "magnet.since_ramp", "clock.aging", "source.guard", "source.if_half_width", "chip.drive_leak", "model.nuclei",
+    "model.barrier_spinful", "workload.refocusing_pulses", "workload.accumulation", "workload.source_share",
+    "workload.allowed_readout_error", "calibration.wait", "calibration.shot_time",
 })
 
 
@@ -44,8 +49,10 @@ class ChangedOnDisk(Exception):
 
 @dataclass(frozen=True, slots=True)
 class Document:
-    """A plan with the text it was read from, the file's fingerprint at that moment (None: no such file), and notes on
-    lines that don't count."""
+    """A plan with the text it was read from.
+
+    `fingerprint` is the file's at that moment (None: no such file), `ignored` are notes on lines that don't count.
+    """
 
     path: Path | None
     text: str
@@ -79,26 +86,25 @@ def load(path: Path, *, keep_unknown: bool = False) -> Document:
     """
     try:
         text = durable.read_text(path, LARGEST_FILE)
+        fingerprint = durable.fingerprint(path)
     except durable.ReadError as error:
         raise PlanError([str(error)]) from None
-    document = read(text, str(path), keep_unknown=keep_unknown)
-    return replace(document, path=path, fingerprint=durable.fingerprint(path))
+    document = read(text, clean(str(path)), keep_unknown=keep_unknown)
+    return replace(document, path=path, fingerprint=fingerprint)
 
 
 def read(text: str, name: str, *, keep_unknown: bool = False) -> Document:
     """Read the text of a plan file called `name` in messages. Raises PlanError with all its errors."""
     data = _parsed(text, name)
+    _refuse_many_rows(data, name)
     reader = _Reader()
     _read_tables(reader, data)
-    wrong = reader.wrong + ([] if keep_unknown else reader.unknown)
-    refused = {finding.key for finding in reader.wrong}
-    for problem in problems(reader.plan):
-        if problem.key not in refused and not (problem.key == "qubit" and "qubit" in data):
-            wrong.append(_Finding(_place(reader.plan, problem.key), problem.key, problem.sentence))
-    lines = tomltext.locate(text)
+    wrong = reader.wrong + ([] if keep_unknown else reader.unknown) + _misfits(reader)
+    lines = tomltext.locate(text) if wrong or reader.unknown else {}
     if wrong:
-        raise PlanError([_sentence(finding, lines, name) for finding in sorted(wrong, key=lambda f: _line(f, lines))])
-    ignored = tuple(f"{_sentence(finding, lines, name)}; the line is kept and does not count" for finding in reader.unknown)
+        raise PlanError(_sentences(wrong, lines, name))
+    unknown = _sentences(reader.unknown, lines, name)
+    ignored = tuple(f"{sentence}; the line is kept and does not count" for sentence in unknown)
     return Document(None, text, reader.plan, ignored=ignored)
 
 
@@ -109,6 +115,8 @@ def text_of(document: Document, plan: Plan) -> tuple[str, bool]:
     """
     if not document.text:
         return house_form(plan), False
+    if plan == document.plan:
+        return document.text, False
     try:
         patched = tomltext.patch(document.text, list(_edits(document, plan)), _order())
         if read(patched, "", keep_unknown=True).plan == plan:
@@ -132,7 +140,8 @@ def save(document: Document, plan: Plan, path: Path, *, overwrite: bool = False)
     on_disk = durable.fingerprint(path)
     expected = document.fingerprint if path == document.path else None
     if on_disk != expected and not overwrite:
-        raise ChangedOnDisk(f"{path} is not the file that was loaded" if path == document.path else f"{path} exists already")
+        what = "is not the file that was loaded" if path == document.path else "exists already"
+        raise ChangedOnDisk(f"{path} {what}")
     text, _ = text_of(document, plan)
     durable.write_atomically(path, text)
     return Document(path, text, plan, durable.fingerprint(path), document.ignored)
@@ -141,22 +150,43 @@ def save(document: Document, plan: Plan, path: Path, *, overwrite: bool = False)
 def _parsed(text: str, name: str) -> dict[str, Any]:
     if not text.strip():
         raise PlanError([f"{name}: the file is empty: a plan begins with 'format = 1'"])
+    too_deep = _DEEP_KEY.search(text)
+    if too_deep:
+        raise PlanError([f"{name}:{_line_at(text, too_deep.start())}: {TOO_DEEP}"])
     try:
         return tomllib.loads(text)
     except tomllib.TOMLDecodeError as error:
-        found = re.search(r"line (\d+)", str(error))
-        line = int(found.group(1)) if found else text.count("\n") + 1
-        shown = clean(text.split("\n")[line - 1].strip())[:60] if line <= text.count("\n") + 1 else ""
-        what = re.sub(r" \(at .*\)$", "", str(error))
-        raise PlanError([f"{name}:{line}: this is not TOML ({clean(what)}): read '{shown}', expected 'key = \"value\"'"]) from None
+        raise PlanError([_no_toml(text, name, str(error))]) from None
+    except ValueError:  # Python reads no whole number of so many digits
+        found = _ENDLESS.search(text)
+        line = f":{_line_at(text, found.start())}" if found else ""
+        raise PlanError([f"{name}{line}: a whole number beyond 1e18 is too large: write a smaller one"]) from None
     except RecursionError:
-        raise PlanError([f"{name}: the file is nested too deeply: a plan has tables and values only"]) from None
+        raise PlanError([f"{name}: {TOO_DEEP}"]) from None
+
+
+def _no_toml(text: str, name: str, error: str) -> str:
+    """The sentence for a text that the TOML parser refuses, from its message."""
+    found = re.search(r"line (\d+)", error)
+    line = int(found.group(1)) if found else _line_at(text, len(text.rstrip()))
+    shown = clean(text.split("\n")[line - 1].strip())[:60]
+    if "Cannot overwrite" in error or "Cannot declare" in error:
+        return f"{name}:{line}: '{shown}' stands twice: keep one, with all that belongs to it"
+    what = clean(re.sub(r" \(at .*\)$", "", error))
+    return f"{name}:{line}: this is not TOML ({what}): read '{shown}', expected 'key = \"value\"'"
+
+
+def _line_at(text: str, place: int) -> int:
+    return text.count("\n", 0, place) + 1
+
+
+def _refuse_many_rows(data: Mapping[str, Any], name: str) -> None:
+    rows = sum(len(rows) for rows in data.values() if isinstance(rows, list))
+    if rows > MOST_ROWS:
+        raise PlanError([f"{name}: the plan has {rows} rows: use at most {MOST_ROWS}"])
 
 
 def _read_tables(reader: _Reader, data: Mapping[str, Any]) -> None:
-    if sum(len(rows) for rows in data.values() if isinstance(rows, list)) > MOST_ROWS:
-        reader.wrong.append(_Finding((), "", f"the plan has more than {MOST_ROWS} rows: use at most that many"))
-        return
     _read_section(reader, "", {key: value for key, value in data.items() if key not in SECTIONS and key not in ROWS})
     for table in TABLES:
         if table and table in data:
@@ -191,9 +221,8 @@ def _read_entries(reader: _Reader, table: str, entries: Mapping[str, Any], path:
     values: dict[str, Value] = {}
     for key, raw in entries.items():
         if key not in givens:
-            known = [*givens, *(() if table else (*SECTIONS, *ROWS))]
-            what = "is not a given of the qubits together" if (table, key) == ("all_qubits", "name") else "is not a given"
-            reader.unknown.append(_Finding((*path, key), prefix + clean(key)[:40], what + nearest(key, [k for k in known if k])))
+            hint = _unknown_hint(table, key) if len(reader.unknown) < MOST_SENTENCES else ""
+            reader.unknown.append(_Finding((*path, key), prefix + clean(key)[:40], f"is not a given{hint}"))
             continue
         try:
             values[key] = read_value(givens[key], raw)
@@ -202,20 +231,43 @@ def _read_entries(reader: _Reader, table: str, entries: Mapping[str, Any], path:
     return values
 
 
+def _unknown_hint(table: str, key: str) -> str:
+    """What to write instead of a key that is no given."""
+    if (table, key) == ("all_qubits", "name"):
+        return " of the qubits together: name each [[qubit]]"
+    known = [*table_givens(table), *(() if table else (*SECTIONS, *ROWS))]
+    return nearest(key, [each for each in known if each]) or f": see 'planner words{f' {table}' if table else ''}'"
+
+
 def _newer_format(key: str, raw: object) -> str:
-    if key == "format" and isinstance(raw, int) and raw > FORMAT:
+    if key == "format" and isinstance(raw, int) and FORMAT < raw <= MOST_COUNTED:
         return f"'{raw}' is newer than this program, which reads format {FORMAT}: update it"
     return ""
 
 
+def _misfits(reader: _Reader) -> list[_Finding]:
+    """The problems of the plan as a whole, but those that follow from a value or table that could not be read."""
+    refused = {finding.path for finding in reader.wrong}
+    found = (_Finding(_place(reader.plan, key), key, sentence) for key, sentence in problems(reader.plan))
+    return [each for each in found if not any(each.path[:depth] in refused for depth in range(1, len(each.path) + 1))]
+
+
 def _place(plan: Plan, key: str) -> tomltext.Path:
     """Where a key of a problem stands in the file's data, as near as it can be named."""
-    parts = key.split(".")
-    if parts[0] in ROWS and len(parts) == 3:
-        rows = plan.rows(parts[0])
-        index = max((i for i, row in enumerate(rows) if parts[1] in (getattr(row, "name", None), str(i + 1))), default=None)
-        return (parts[0],) if index is None else (parts[0], index, parts[2])
-    return tuple(parts)
+    table, _, rest = key.partition(".")
+    name, _, given = rest.rpartition(".")
+    if table in ROWS and name:
+        rows = plan.rows(table)
+        index = max((i for i, row in enumerate(rows) if name in (getattr(row, "name", None), str(i + 1))), default=None)
+        return (table,) if index is None else (table, index, given)
+    return tuple(key.split("."))
+
+
+def _sentences(findings: list[_Finding], lines: Mapping[tomltext.Path, int], name: str) -> list[str]:
+    """A sentence for each finding in the order of the file; of very many, the first and how many more."""
+    ordered = sorted(findings, key=lambda finding: _line(finding, lines))
+    more = [f"{name}: and {len(ordered) - MOST_SENTENCES} more like these"] if len(ordered) > MOST_SENTENCES else []
+    return [_sentence(finding, lines, name) for finding in ordered[:MOST_SENTENCES]] + more
 
 
 def _line(finding: _Finding, lines: Mapping[tomltext.Path, int]) -> int:
@@ -291,8 +343,9 @@ def _data(plan: Plan, beside: Mapping[str, Any]) -> dict[str, Any]:
             values = _row_data(table, plan.chapter(table), found)
             data.update(values if not table else {table: values} if values else {})
         elif plan.rows(table):
-            found_rows = {row.get("name"): row for row in beside.get(table, []) if row.get("name") is not None}
-            data[table] = [_row_data(table, row, found_rows.get(getattr(row, "name", None), {})) for row in plan.rows(table)]
+            found_rows = {row["name"]: row for row in beside.get(table, []) if "name" in row}
+            data[table] = [_row_data(table, row, found_rows.get(getattr(row, "name", None), {}))
+                           for row in plan.rows(table)]
     return data
 
 
@@ -302,7 +355,7 @@ def _row_data(table: str, chapter: Any, found: Mapping[str, Any]) -> dict[str, A
     typed = {name: _toml(given, value, found.get(name)) for name, given in givens.items()
              if (value := getattr(chapter, name)) is not None}
     others = {key: value for key, value in found.items() if key not in givens}
-    return typed | ({key: value for key, value in others.items() if key not in SECTIONS and key not in ROWS} if not table else others)
+    return typed | {key: value for key, value in others.items() if table or (key not in SECTIONS and key not in ROWS)}
 
 
 def _order() -> dict[str, list[str]]:

@@ -8,9 +8,9 @@ from pathlib import Path
 from planner import planfile
 from planner.chapters.qubit import Qubit
 from planner.plan import Address, Plan, unit_shown, with_rows
-from planner.soundness import edited, problems
-from planner.values import GivenError, read_value
 from planner.planfile import Document
+from planner.soundness import edited, refuse_new_problems
+from planner.values import read_value
 
 
 @dataclass(frozen=True, slots=True)
@@ -91,7 +91,5 @@ def saved(session: Session, path: Path, *, overwrite: bool = False) -> Session:
 
 
 def _checked(session: Session, plan: Plan) -> Session:
-    found = problems(plan)
-    if found:
-        raise GivenError(f"{found[0].key}: {found[0].sentence}")
+    refuse_new_problems(session.plan, plan)
     return changed(session, plan)

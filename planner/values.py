@@ -6,9 +6,11 @@ from datetime import date
 from difflib import get_close_matches
 
 from planner.declare import Form, Given
-from planner.kinds import Kind, Quantity, QuantityError, clean, from_toml, in_unit, parse
+from planner.kinds import MOST_COUNTED, Kind, Quantity, QuantityError, clean, from_toml, in_unit, parse
 
 Value = Quantity | str
+LARGEST_SIZE = 1e30  # in the first unit of the kind; squares and products of what lies below stay finite
+LONGEST_TEXT = 500  # characters of a note
 
 
 class GivenError(ValueError):
@@ -36,6 +38,7 @@ def read_value(given: Given, raw: object, *, assume: str = "") -> Value:
     except QuantityError as error:
         raise GivenError(str(error)) from None
     _check_bounds(given, quantity)
+    _check_size(given.kind, quantity)
     return quantity
 
 
@@ -63,8 +66,19 @@ def _bound(kind: Kind, bound: float, unit: str) -> str:
         return f"{bound:.4g} {kind.si}"
 
 
+def _check_size(kind: Kind, quantity: Quantity) -> None:
+    """Refuse slips of the exponent, whose squares no computer number holds."""
+    unit = kind.units[kind.first_unit]
+    scale = 1.0 if unit.level else float(unit.factor)
+    numbers = (*_numbers(quantity.value), *_numbers(quantity.tolerance or ()))
+    if not all(number == 0 or 1 / LARGEST_SIZE <= abs(number) / scale <= LARGEST_SIZE for number in numbers):
+        named = kind.si if unit.level else kind.first_unit
+        raise GivenError(f"'{quantity.text}' is out of range: write at most {f'1e30 {named}'.strip()} and, where it is "
+                         f"not 0, at least {f'1e-30 {named}'.strip()}")
+
+
 def _check_bounds(given: Given, quantity: Quantity) -> None:
-    values = quantity.value if isinstance(quantity.value, tuple) else (quantity.value,)
+    values = _numbers(quantity.value)
     fits = all((given.above is None or value > given.above) and (given.least is None or value >= given.least)
                and (given.below is None or value < given.below) and (given.most is None or value <= given.most)
                for value in values)
@@ -79,8 +93,8 @@ def _text(raw: object) -> str:
     if not isinstance(raw, str):
         raise GivenError(f"{_shown(raw)} is not a text: write it in quotes")
     text = clean(raw.replace("\n", " ")).strip()
-    if len(text) > 500:
-        raise GivenError(f"the text has {len(text)} characters: use at most 500")
+    if len(text) > LONGEST_TEXT:
+        raise GivenError(f"the text has {len(text)} characters: use at most {LONGEST_TEXT}")
     return text
 
 
@@ -109,6 +123,8 @@ def _shown(raw: object) -> str:
         return str(raw).lower()
     if isinstance(raw, list | dict):
         return "a list" if isinstance(raw, list) else "a table"
+    if isinstance(raw, int) and abs(raw) > MOST_COUNTED:  # Python refuses to write out the very longest
+        return "a whole number beyond 1e18"
     return f"'{clean(str(raw))[:80]}'"
 
 
@@ -120,4 +136,8 @@ def number(quantity: Quantity) -> float:
 
 def components(quantity: Quantity) -> int:
     """How many numbers the quantity holds."""
-    return len(quantity.value) if isinstance(quantity.value, tuple) else 1
+    return len(_numbers(quantity.value))
+
+
+def _numbers(numbers: float | tuple[float, ...]) -> tuple[float, ...]:
+    return numbers if isinstance(numbers, tuple) else (numbers,)

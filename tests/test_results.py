@@ -37,6 +37,9 @@ CASES: dict[str, tuple[Mapping[str, Entry], Mapping[str, float]]] = {
         "relative": 8e-6}),
     "gradient": ({Q + "frequency_noise": None, Q + "gradient": "0.1 mT/nm", "model.charge_noise": "0.9 ueV/rtHz"},
                  {"flicker": nan, "gradient": 1e5, "charge_noise": 0.9 * UEV}),
+    "relative noise before gradient": (
+        {Q + "frequency_noise": None, Q + "relative_noise": "8 ppm/rtHz", Q + "gradient": "0.1 mT/nm"},
+        {"flicker": nan, "relative": 8e-6}),
     "first that is typed": ({Q + "relative_noise": "8 ppm/rtHz", Q + "gradient": "0.1 mT/nm"}, {}),
     "model's relative noise": ({Q + "frequency_noise": None, "model.relative_noise": "4 ppm/rtHz"},
                                {"flicker": nan, "relative": 4e-6}),
@@ -44,6 +47,9 @@ CASES: dict[str, tuple[Mapping[str, Entry], Mapping[str, float]]] = {
     "measured T2*": ({Q + "t2_star": "8.1 us", Q + "white_noise": "200 Hz^2/Hz"}, {"t2": 8.1e-6, "white": 200.0}),
     "measured T2*, unexplained": ({Q + "t2_star": "300 ns"}, {"t2": 3e-7}),
     "idle and T1": ({"workload.idle_per_gate": "40 ns", Q + "t1": "2 ms"}, {"idle": 40e-9, "t1": 2e-3}),
+    "long idle times set what is stood": (
+        {"workload.idle_per_gate": "2 us", "workload.longest_wait": "20 ns", "workload.allowed_gate_error": "0.1"},
+        {"idle": 2e-6, "wait": 2e-8, "gate_error": 0.1}),
     "long gates": ({"workload.gate_time": "400 ns", Q + "t1": "1 ms"}, {"gate_time": 4e-7, "t1": 1e-3}),
     "slow Rabi": ({Q + "rabi_frequency": "60 kHz"}, {"rabi": 6e4}),
     "hardly a Rabi": ({Q + "rabi_frequency": "10 kHz"}, {"rabi": 1e4}),
@@ -284,6 +290,22 @@ def test_local_oscillator_where_none_is_typed(local: tuple[float, ...], half_wid
     )
     used = [MU_B * 2 * (0.5 + field / 1e3) for field in (0.0, *local)]
     assert of(evaluation, "source.lo") == pytest.approx(best_tone(used, half_width * 1e6), abs=2)
+
+
+@pytest.mark.parametrize(("half_width", "tone"), [(500, 13990e6), (5, 13995e6), (10, 13990e6)])
+def test_of_two_tones_as_good_the_lower_is_taken(half_width: int, tone: float) -> None:
+    """One qubit at 14000 MHz: 13990 and 14010 are the nearest clear tones; within 5 MHz both ends are the farthest."""
+    evaluation = evaluate(
+        plan_of({"magnet.field": f"{14e9 / (2 * MU_B)!r} T", "source.if_half_width": f"{half_width} MHz"})
+    )
+    assert of(evaluation, "source.lo") == tone
+
+
+@pytest.mark.parametrize(("wait", "known"), [("2.023 us", True), ("2.024 us", False)])
+def test_a_contrast_below_a_hundredth_calibrates_nothing(wait: str, known: bool) -> None:
+    """0.6 exp(-(t/T2*)^2) is 0.01 at 2.0235 T2*."""
+    evaluation = evaluate(plan_of({"calibration.wait": wait, Q + "t2_star": "1 us"}))
+    assert isnan(of(evaluation, "noise.calibration")) is not known
 
 
 @pytest.mark.parametrize("loose", ["carrier", "baseband"])

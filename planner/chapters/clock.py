@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from planner.switches import IS_LOOSE
 from planner.declare import (
     Bound,
     Chapter,
@@ -18,6 +17,7 @@ from planner.declare import (
     Nature,
     Per,
     Typed,
+    Unknown,
     Word,
     given,
     optional,
@@ -25,6 +25,7 @@ from planner.declare import (
 )
 from planner.kinds import DRIFT, FRACTION, FREQUENCY
 from planner.physics import clock, tones
+from planner.switches import IS_LOOSE
 
 LOOSE = {"none": "every instrument is locked to the one reference",
          "carrier": "the carrier (local oscillator) comes from an instrument on its own clock",
@@ -81,13 +82,14 @@ DERIVEDS = (
                         "below 0.1 s the Allan deviation of the clock is only an upper bound"),
             help="Allan deviation expected at the length of the sequence; below 0.1 s only an upper bound"),
     Derived("clock.loose_tone", tones.loose_tone, {
-        "frequency": "larmor.frequency", "oscillator": Input("source.lo", when=IS_LOOSE),
+        "frequency": "larmor.frequency", "oscillator": Input("source.lo", when=(IS_LOOSE,)),
         "carrier_is_loose": word("clock.loose", "carrier")}, shown=False, only=IS_LOOSE,
-        off="everything is locked"),
+        off=Unknown("everything is locked")),
     Derived("clock.required_mismatch", clock.required_accuracy, {
         "source_share": "workload.source_share", "allowed_noise": "coherence.allowed_noise",
         "frequency": "clock.loose_tone"}, only=IS_LOOSE,
-        off="everything is locked", help="largest fractional change of the loose instrument between two calibrations"),
+        off=Unknown("everything is locked"), unknown=Unknown("the loose tone is at 0 Hz: nothing of it can shift"),
+        help="largest fractional change of the loose instrument between two calibrations"),
 )
 
 LIMITS = (

@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
-from planner.switches import ALIGNED, FREE, RANDOMISED, REFOCUSED
 from planner.declare import Compare, Derived, Input, Limit, Unknown, optional, word
 from planner.kinds import ANGLE, FRACTION, NUMBER
 from planner.physics import dephasing, gates, noise
+from planner.switches import ALIGNED, FREE, RANDOMISED, REFOCUSED
 
 _MEASURED = "qubit.t2_star"
 _UNLIMITED = Unknown("no noise in the model limits it")
@@ -27,7 +27,7 @@ DERIVEDS = (
         "amplitude": "coherence.refocused_flicker", "density": "noise.white_density"}, heading="T2 echo", display="us",
         unknown=_UNLIMITED, help="1/e time after one refocusing pulse, of charge and white noise"),
     Derived("coherence.wait_phase", dephasing.wait_phase, {
-        "total": Input("noise.total", when=FREE), "amplitude": Input("coherence.refocused_flicker", when=REFOCUSED),
+        "total": Input("noise.total", when=(FREE,)), "amplitude": Input("coherence.refocused_flicker", when=(REFOCUSED,)),
         "density": "noise.white_density", "wait": "workload.longest_wait", "pulses": "workload.refocusing_pulses"},
         heading="phase", display="rad", help="rms phase over the longest wait"),
     Derived("coherence.pulse_detuning", gates.pulse_detuning, {
@@ -48,28 +48,29 @@ DERIVEDS = (
         "error": "coherence.error_per_gate", "allowed": "workload.allowed_sequence_error"}, heading="random.",
         unknown=_UNLIMITED, help="gates within the allowed sequence error when errors add at random"),
     Derived("coherence.gates_aligned", gates.gates_aligned, {
-        "static": Input("noise.static", when=FREE), "free_amplitude": Input("noise.free_flicker", when=FREE),
-        "free_density": Input("noise.free_white", when=FREE),
-        "amplitude": Input("coherence.refocused_flicker", when=REFOCUSED), "density": "noise.white_density",
+        "static": Input("noise.static", when=(FREE,)), "free_amplitude": Input("noise.free_flicker", when=(FREE,)),
+        "free_density": Input("noise.free_white", when=(FREE,)),
+        "amplitude": Input("coherence.refocused_flicker", when=(REFOCUSED,)), "density": "noise.white_density",
         "lowest": "calibration.lowest", "pulses": "workload.refocusing_pulses",
         "allowed": "workload.allowed_sequence_error", "gate_time": "workload.gate_time",
         "idle": "workload.idle_per_gate"}, heading="aligned", unknown=_UNLIMITED,
         help="gates within the allowed sequence error when errors add up in phase"),
     Derived("coherence.sequence_error", gates.sequence_error, {
-        "error": Input("coherence.error_per_gate", when=RANDOMISED), "gates": "workload.gates",
-        "aligned": word("workload.accumulation", "aligned"), "static": Input("noise.static", when=FREE),
-        "free_amplitude": Input("noise.free_flicker", when=FREE), "free_density": Input("noise.free_white", when=FREE),
-        "amplitude": Input("coherence.refocused_flicker", when=REFOCUSED), "density": "noise.white_density",
+        "error": Input("coherence.error_per_gate", when=(RANDOMISED,)), "gates": "workload.gates",
+        "aligned": word("workload.accumulation", "aligned"), "static": Input("noise.static", when=(ALIGNED, FREE)),
+        "free_amplitude": Input("noise.free_flicker", when=(ALIGNED, FREE)),
+        "free_density": Input("noise.free_white", when=(ALIGNED, FREE)),
+        "amplitude": Input("coherence.refocused_flicker", when=(ALIGNED, REFOCUSED)), "density": "noise.white_density",
         "lowest": "calibration.lowest", "pulses": "workload.refocusing_pulses",
         "sequence_time": "coherence.sequence_time"}, heading="seq. err", help="error of the whole circuit"),
     Derived("coherence.reachable_gates", gates.reachable_gates, {
-        "randomised": Input("coherence.gates_randomised", when=RANDOMISED),
-        "aligned_gates": Input("coherence.gates_aligned", when=ALIGNED),
+        "randomised": Input("coherence.gates_randomised", when=(RANDOMISED,)),
+        "aligned_gates": Input("coherence.gates_aligned", when=(ALIGNED,)),
         "aligned": word("workload.accumulation", "aligned")}, heading="gates",
         help="gates within the allowed sequence error, by the accumulation that is judged"),
     Derived("coherence.allowed_noise", gates.allowed_noise, {
         "rabi_frequency": "qubit.rabi_frequency", "idle": "workload.idle_per_gate",
-        "wait": Input("workload.longest_wait", when=FREE), "pulses": "workload.refocusing_pulses",
+        "wait": Input("workload.longest_wait", when=(FREE,)), "pulses": "workload.refocusing_pulses",
         "gates": "workload.gates", "allowed_phase": "workload.allowed_phase",
         "allowed_gate_error": "workload.allowed_gate_error",
         "allowed_sequence_error": "workload.allowed_sequence_error"}, heading="stands", display="kHz",

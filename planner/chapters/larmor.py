@@ -14,14 +14,14 @@ DERIVEDS = (
         "set_vector": "larmor.set_vector", "local_field": "qubit.local_field"}, shown=False, trailing=(3,)),
     Derived("larmor.tensor", zeeman.g_tensor, {"g": "qubit.g", "g_euler": "qubit.g_euler"}, shown=False, trailing=(3, 3)),
     Derived("larmor.precession", zeeman.precession_vector, {
-        "g_tensor": "larmor.tensor", "field_at_dot": "larmor.field_at_dot"}, shown=False, trailing=(3,)),
+        "g_tensor": "larmor.tensor", "field_at_dot": "larmor.field_at_dot"}, shown=False, trailing=(3,),
+        unknown=Unknown("the spin does not precess: the field at the dot, or g along it, is zero")),
     Derived("larmor.response", zeeman.field_response, {
-        "g_tensor": "larmor.tensor", "precession_vector": "larmor.precession"}, shown=False, trailing=(3,),
-        unknown=Unknown("the field at the dot is zero")),
+        "g_tensor": "larmor.tensor", "precession_vector": "larmor.precession"}, shown=False, trailing=(3,)),
     Derived("larmor.field", zeeman.field_size, {"field_at_dot": "larmor.field_at_dot"}, heading="field", display="mT", digits=5,
             help="size of the field at the dot, local field included"),
     Derived("larmor.g", zeeman.effective_g, {"precession_vector": "larmor.precession", "field_size": "larmor.field"},
-            heading="g", unknown=Unknown("the field at the dot is zero"), help="effective g along the field at the dot"),
+            heading="g", help="effective g along the field at the dot"),
     Derived("larmor.axis", zeeman.heavy_axis_share, {
         "g": "qubit.g", "g_euler": "qubit.g_euler", "precession_vector": "larmor.precession", "is_hole": "host.hole"},
         heading="axis", unknown=Unknown("a hole with one g value has no known axis: type three principal values", "qubit.g"),

@@ -5,9 +5,9 @@ A new noise source is one law, one line here and one argument of `static_noise`.
 
 from __future__ import annotations
 
-from planner.switches import IS_LOOSE
 from planner.declare import Bound, Derived, Input, Unknown, optional
 from planner.physics import dephasing, noise, nuclei, zeeman
+from planner.switches import IS_LOOSE
 
 _MEASURED = "qubit.t2_star"
 _NO_T2_STAR = Unknown("no measured T2* is typed", _MEASURED)
@@ -45,7 +45,7 @@ DERIVEDS = (
     Derived("noise.clock", noise.scaled_tone, {"frequency": "larmor.frequency", "change": "clock.change"},
             heading="clock", display="kHz", help="shift by the change of the reference since calibration"),
     Derived("noise.loose", noise.loose_noise, {
-        "tone": Input("clock.loose_tone", when=IS_LOOSE), "drift": "clock.loose_drift"}, heading="loose", display="kHz",
+        "tone": Input("clock.loose_tone", when=(IS_LOOSE,)), "drift": "clock.loose_drift"}, heading="loose", display="kHz",
         help="shift by the instrument that is not locked"),
     Derived("noise.charge_amplitude", noise.charge_amplitude, {
         "typed": optional("qubit.frequency_noise"), "own_relative": optional("qubit.relative_noise"),

@@ -58,7 +58,7 @@ class Qubit(Chapter):
                                   Nature.FACT, missing=Missing.OFF, least=0, example="11 kHz; measured CD12",
                                   sensible="1 kHz to 20 MHz")
     tracked_noise: Typed = given(FREQUENCY, "what real-time tracking leaves of the nuclear noise", Nature.FACT,
-                                  missing=Missing.OFF, least=0, example="1.8 MHz", sensible="10 kHz to 2 MHz", later=True)
+                                  missing=Missing.OFF, least=0, example="1.8 MHz", sensible="10 kHz to 2 MHz")
     t1: Typed = given(TIME, "relaxation time", Nature.FACT, missing=Missing.OFF, above=0, example="80 ms; measured CD12",
                        sensible="0.1 ms to 10 s")
     t2_star: Typed = given(TIME, "measured 1/e time of exp(-(t/T2*)^2); replaces the modelled noise it contains",

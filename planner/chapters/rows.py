@@ -99,7 +99,7 @@ class Line(Chapter):
     count: Typed = given(COUNT, "how many alike", Nature.CHOICE, locks=Lock.CLOSING, missing=Missing.DEFAULT, default="1",
                           least=1, most=1e6, example="13", later=True)
     attenuation: Typed = given(RATIO, "attenuators, one dB value per stage from warm to cold", Nature.CHOICE,
-                                sizes=tuple(range(1, 13)), locks=Lock.CLOSING, example="0, 20, 0, 6, 3 dB", later=True)
+                                sizes=tuple(range(1, 13)), per_stage=True, locks=Lock.CLOSING, example="0, 20, 0, 6, 3 dB", later=True)
     cable_loss: Typed = given(RATIO, "loss of the cables, before the first stage", Nature.FACT, missing=Missing.DEFAULT,
                                default="0 dB", least=1, example="9 dB", later=True)
     source_temperature: Typed = given(TEMPERATURE, "noise temperature of what feeds the line", Nature.FACT,

@@ -22,7 +22,7 @@ class Source(Chapter):
     lo: Typed = given(FREQUENCY, "local oscillator; unset: found so that it and all images stay clear of the qubits",
                        Nature.CHOICE, locks=Lock.OPEN, missing=Missing.FOUND, above=0, example="16.165 GHz")
     if_half_width: Typed = given(FREQUENCY, "usable half width around the local oscillator", Nature.CHOICE,
-                                  locks=Lock.CLOSING, missing=Missing.DEFAULT, default="500 MHz", above=0,
+                                  locks=Lock.CLOSING, missing=Missing.DEFAULT, default="500 MHz", above=0, most=5e9,
                                   example="500 MHz", sensible="100 to 1000 MHz")
     image: Typed = given(RATIO, "power of the image beside the wanted tone, after correction", Nature.FACT,
                           missing=Missing.DEFAULT, default="-40 dB", below=1, example="-40 dB", sensible="-70 to -30 dB",

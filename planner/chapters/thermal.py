@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
-from planner.switches import ENERGY_SELECTIVE, PARITY
 from planner.declare import Compare, Derived, Limit, Per
 from planner.kinds import ENERGY, FRACTION
 from planner.physics import thermal
+from planner.switches import ENERGY_SELECTIVE, PARITY
 
 DERIVEDS = (
     Derived("thermal.ratio", thermal.thermal_ratio, {

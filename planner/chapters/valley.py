@@ -2,15 +2,15 @@
 
 from __future__ import annotations
 
-from planner.switches import HAS_VALLEYS
-from planner.declare import Compare, Derived, Limit
+from planner.declare import Compare, Derived, Limit, Unknown
 from planner.kinds import ENERGY
 from planner.physics import thermal
+from planner.switches import HAS_VALLEYS
 
 DERIVEDS = (
     Derived("valley.distance", thermal.valley_distance, {
         "energy": "larmor.energy", "valley_splitting": "qubit.valley_splitting"}, only=HAS_VALLEYS,
-        off="the host has no valleys", heading="valley gap", display="ueV",
+        off=Unknown("the host has no valleys"), heading="valley gap", display="ueV",
         help="distance of Zeeman energy and valley splitting"),
 )
 

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from planner.switches import HAS_VALLEYS
 from planner.declare import (
     Chapter,
     Derived,
@@ -15,6 +14,7 @@ from planner.declare import (
     Nature,
     Per,
     Typed,
+    Unknown,
     Word,
     given,
     optional,
@@ -22,6 +22,7 @@ from planner.declare import (
 )
 from planner.kinds import ANGLE, COUNT, ENERGY, FRACTION, TIME
 from planner.physics import gates, thermal
+from planner.switches import HAS_VALLEYS
 
 ACCUMULATION = {"randomised": "gate errors add at random, as in a random circuit",
                 "aligned": "gate errors add up in phase, as in one long wait"}
@@ -88,7 +89,7 @@ DERIVEDS = (
             help="duration of one gate: half a Rabi period"),
     Derived("workload.blockade_window", thermal.smallest_in_use, {
         "valley_splitting": "qubit.valley_splitting", "in_use": word("qubit.role", "use")}, per=Per.PLAN, only=HAS_VALLEYS,
-        off="the host has no valleys: type workload.blockade_window",
+        off=Unknown("the host has no valleys: type workload.blockade_window", "workload.blockade_window"),
         help="energy window of the blockade: smallest valley splitting of the qubits in use"),
     Derived("workload.noise_time", gates.noise_time, {
         "wait": optional("workload.longest_wait"),

@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from planner.declare import law
-from planner.kinds import DRIFT, FRACTION, FREQUENCY, TIME, COUNT
+from planner.kinds import COUNT, DRIFT, FRACTION, FREQUENCY, TIME
 from planner.physics import Array
 
 _GAUSS_POINTS, _GAUSS_WEIGHTS = np.polynomial.legendre.leggauss(12)

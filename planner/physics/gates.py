@@ -7,7 +7,7 @@ import numpy as np
 from planner.declare import law
 from planner.kinds import ANGLE, COUNT, FRACTION, FREQUENCY, FREQUENCY_NOISE, NUMBER, TIME, WHITE_NOISE
 from planner.physics import Array
-from planner.physics.dephasing import free_chi, flicker_rms, refocused_chi, refocused_time, time_of_chi
+from planner.physics.dephasing import flicker_rms, free_chi, refocused_chi, refocused_time, time_of_chi
 
 _HERMITE_POINTS, _HERMITE_WEIGHTS = np.polynomial.hermite_e.hermegauss(32)
 _NODES = _HERMITE_POINTS[16:]  # the integrand is even: half of the points carry all of the weight
@@ -117,8 +117,7 @@ def reachable_gates(*, randomised: Array, aligned_gates: Array, aligned: Array) 
 def allowed_noise(*, rabi_frequency: Array, idle: Array, wait: Array, pulses: Array, gates: Array, allowed_phase: Array,
                   allowed_gate_error: Array, allowed_sequence_error: Array) -> Array:
     """The slow detuning that a qubit stands: the smallest of what phase, gate error and sequence error allow."""
-    phase = np.where(pulses > 0, np.inf, allowed_phase / (2 * np.pi * np.where(np.isnan(wait), np.inf, wait)))
-    phase = np.where(phase > 0, phase, np.inf)
+    phase = np.where(pulses > 0, np.inf, allowed_phase / (2 * np.pi * wait))
     one_gate = -np.expm1(np.log1p(-2 * allowed_sequence_error) / gates) / 2
     pulse_alone = _tolerated_ratio(allowed_gate_error, np.zeros_like(allowed_gate_error)) * rabi_frequency
     per_gate = _tolerated_ratio(one_gate, idle * rabi_frequency) * rabi_frequency

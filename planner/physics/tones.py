@@ -55,6 +55,8 @@ def loose_tone(*, frequency: Array, oscillator: Array, carrier_is_loose: Array) 
 def _best_tone(frequency: Array, half_width: float) -> float:
     lowest, highest = frequency.min(), frequency.max()
     middle = (lowest + highest) / 2
+    if not np.isfinite(middle):
+        return float("nan")
     first, last = np.ceil((highest - half_width - 1) / MHZ), np.floor((lowest + half_width + 1) / MHZ)
     if last < first:
         return float(middle)

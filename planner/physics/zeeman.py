@@ -45,8 +45,9 @@ def g_tensor(*, g: Array, g_euler: Array) -> Array:
 
 @law(FIELD, reference="crippa2018", place="g-matrix times field", g_tensor=NUMBER, field_at_dot=FIELD)
 def precession_vector(*, g_tensor: Array, field_at_dot: Array) -> Array:
-    """v = g B: along the quantisation axis (not along B), with the size g_eff B."""
-    return _apply(g_tensor, field_at_dot)
+    """v = g B: along the quantisation axis (not along B), with the size g_eff B; nan where the spin does not precess."""
+    vector = _apply(g_tensor, field_at_dot)
+    return np.where(_norm(vector)[..., None] > 0, vector, np.nan)
 
 
 @law(NUMBER, reference="crippa2018", place="effective g", precession_vector=FIELD, field_size=FIELD)
@@ -101,8 +102,8 @@ def heavy_axis_share(*, g: Array, g_euler: Array, precession_vector: Array, is_h
     With three equal values that axis is c3 for an electron; for a hole it is not known and the result is nan.
     """
     axes = np.swapaxes(principal_axes(g_euler), -1, -2)
-    largest = np.argmax(np.abs(g), axis=-1)[..., None, None]
-    heavy = np.take_along_axis(axes, largest, axis=-2)[..., 0, :]
+    heaviest = np.eye(3)[np.argmax(np.abs(g), axis=-1)]
+    heavy = (heaviest[..., None] * axes).sum(axis=-2)
     scalar = np.ptp(np.abs(g), axis=-1) == 0
     heavy = np.where(scalar[..., None], np.array([0.0, 0.0, 1.0]), heavy)
     share = np.abs(_dot(precession_vector, heavy)) / _norm(precession_vector)

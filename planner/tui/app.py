@@ -12,7 +12,6 @@ from textual.widgets import Static
 
 from planner import session as sessions
 from planner.evaluate import Evaluation, evaluate
-from planner.values import GivenError
 from planner.planfile import Document
 from planner.session import Session
 from planner.studies.typenext import TypeNext, type_next
@@ -22,12 +21,12 @@ from planner.tui.foot import Foot
 from planner.tui.grid import Grid
 from planner.tui.head import Head
 from planner.tui.help import Help
+from planner.values import GivenError
 from planner.views.editing import NOT_TYPED, given_at, help_at, typing_line
-from planner.views.first_screen import head_lines
+from planner.views.first_screen import head_lines, too_small
 from planner.views.tables import PANES, margin_table, pane_table, pane_title, qubit_table
 
 WIDE = 120  # columns from which the margins stand beside the other panes
-NARROWEST, LOWEST = 60, 16
 STOPS = ("qubits", *PANES)
 
 
@@ -47,7 +46,7 @@ class Planner(App[None], inherit_bindings=False):
         self.following: TypeNext | None = None
         self.stop = self.chapter = "magnet"  # the pane with the keyboard, and the givens shown below the qubits
         self.news = ""  # what the next move of the cursor, which an action caused, must not wipe out
-        self.head, self.foot = Head(), Foot()
+        self.head, self.foot, self.narrow = Head(), Foot(), Static("", id="narrow", markup=False)
         self.qubits = Grid(qubit_table(self.evaluation), title="qubits", id="qubits")
         self.pane = Grid(pane_table(self.evaluation, self.chapter, 80), title=pane_title(self.chapter), id="pane")
         self.margins = Grid(margin_table(self.evaluation, 80), title="margins", id="margins")
@@ -58,7 +57,7 @@ class Planner(App[None], inherit_bindings=False):
         yield self.qubits
         yield Horizontal(self.pane, self.margins, id="lower")
         yield self.foot
-        yield Static("", id="narrow", markup=False)
+        yield self.narrow
 
     def on_mount(self) -> None:
         """The field is what people look for first."""
@@ -69,15 +68,18 @@ class Planner(App[None], inherit_bindings=False):
             self.foot.say(note, bad=True)
 
     def on_resize(self, event: events.Resize) -> None:
-        """Another size: other panes beside each other."""
-        small = event.size.width < NARROWEST or event.size.height < LOWEST
+        """Another size: other panes beside each other, or the one line where it is too small."""
+        message = too_small(event.size.width, event.size.height)
         for part in (self.head, self.qubits, self.query_one("#lower"), self.foot):
-            part.display = not small
-        narrow = self.query_one("#narrow", Static)
-        narrow.display = small
-        narrow.update(f"The window has {event.size.width} columns and {event.size.height} lines: "
-                      f"the planner needs {NARROWEST} and {LOWEST}.")
-        self.call_next(self.arrange)  # the app knows its new size only after this message
+            part.display = not message
+        self.narrow.display = bool(message)
+        self.narrow.update(message)
+        self.call_next(self.resume)  # the app knows its new size only after this message
+
+    def resume(self) -> None:
+        """Arrange for the new size; what was hidden has lost the keyboard."""
+        self.arrange()
+        (self.foot if self.foot.asking else self.grid).focus(scroll_visible=False)
 
     # -- showing
 
@@ -93,11 +95,10 @@ class Planner(App[None], inherit_bindings=False):
 
     def arrange(self) -> None:
         """Show the evaluation around the qubits: head, givens and margins, as many as the window has room for."""
-        width = self.size.width
-        wide = width >= WIDE
+        wide = self.size.width >= WIDE
         on_margins = self.stop == "margins"
         self.margins.display, self.pane.display = wide or on_margins, wide or not on_margins
-        half = width // 2 if wide else width
+        half = self.size.width // 2 if wide else self.size.width
         self.show_head()
         self.qubits.styles.max_height = max(5, self.size.height // 2 - 2)
         self.margins.show(margin_table(self.evaluation, half))
@@ -125,9 +126,13 @@ class Planner(App[None], inherit_bindings=False):
         self.stop = stop
         self.chapter = self.chapter if stop in {"qubits", "margins"} else stop
         self.arrange()
-        grid = {"qubits": self.qubits, "margins": self.margins}.get(stop, self.pane)
-        grid.focus(scroll_visible=False)
-        self.foot.say(help_at(self.evaluation, grid.cursor_key))
+        self.grid.focus(scroll_visible=False)
+        self.foot.say(help_at(self.evaluation, self.grid.cursor_key))
+
+    @property
+    def grid(self) -> Grid:
+        """The grid that has the keyboard while nothing is asked."""
+        return {"qubits": self.qubits, "margins": self.margins}.get(self.stop, self.pane)
 
     # -- keys and what comes of them
 
@@ -190,10 +195,11 @@ class Planner(App[None], inherit_bindings=False):
     def action_do(self, method: str) -> None:
         """Do one action of the table."""
         actions: dict[str, Callable[[], object]] = {
-         "undo": lambda: self.take(sessions.undone(self.session)), "redo": lambda: self.take(sessions.redone(self.session)),
-         "save": lambda: files.save(self), "save_as": lambda: files.save_as(self), "leave": lambda: files.leave(self),
-         "add_qubit": lambda: qubits.add(self), "drop_qubit": lambda: qubits.drop(self), "margins": lambda: self.visit("margins"),
-         "help": lambda: self.push_screen(Help())}
+            "undo": lambda: self.take(sessions.undone(self.session)), "save": lambda: files.save(self),
+            "redo": lambda: self.take(sessions.redone(self.session)), "save_as": lambda: files.save_as(self),
+            "add_qubit": lambda: qubits.add(self), "drop_qubit": lambda: qubits.drop(self),
+            "margins": lambda: self.visit("margins"), "leave": lambda: files.leave(self),
+            "help": lambda: self.push_screen(Help())}
         actions[method]()
 
 

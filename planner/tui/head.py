@@ -14,6 +14,9 @@ _VERDICT = re.compile(r"(?<=\d )(short|tight|unknown)(?=:)|(unknown)(?=:)")
 class Head(Static):
     """Shows the head lines; repaints only when they change."""
 
+    # A folded line would push the one that matters most out of sight.
+    DEFAULT_CSS = "Head { text-wrap: nowrap; text-overflow: clip; }"
+
     def __init__(self) -> None:
         super().__init__(markup=False)
         self._lines: list[str] = []
@@ -22,11 +25,11 @@ class Head(Static):
         """Shows these lines."""
         if lines != self._lines:
             self._lines = lines
-            self.update(Text("\n", no_wrap=True, overflow="ellipsis").join([Text(lines[0]), Text(lines[1]), _worst(lines[2])]), layout=False)
+            self.update(Text("\n").join([Text(lines[0]), Text(lines[1]), _worst(lines[2])]), layout=False)
 
 
 def _worst(line: str) -> Text:
-    text = Text(line, no_wrap=True, overflow="ellipsis")
+    text = Text(line)
     found = _VERDICT.search(line)
     if found is not None:
         text.stylize(VERDICT_LOOKS[found.group()], found.start(), found.end())

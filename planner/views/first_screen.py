@@ -9,6 +9,7 @@ from planner.views.table import Table
 from planner.views.tables import margin_table, qubit_table
 
 FIRST_COLUMNS = 7  # name, five results, the worst margin
+NARROWEST, LOWEST = 60, 16  # columns and lines below which a full screen says nothing useful
 
 
 def head_lines(evaluation: Evaluation, following: TypeNext | None, state: str, width: int) -> list[str]:
@@ -20,6 +21,13 @@ def head_lines(evaluation: Evaluation, following: TypeNext | None, state: str, w
     left = max(0, width - len(state) - 2) if state else width  # however long the names: the state stays in view
     return [f"{first[:left]:<{left}}{'  ' if state else ''}{state}".rstrip(), counts(evaluation),
             headline(evaluation, following)]
+
+
+def too_small(columns: int, lines: int) -> str:
+    """What to say in a window that is too small for the editor; empty where it is large enough."""
+    if columns >= NARROWEST and lines >= LOWEST:
+        return ""
+    return f"The window has {columns} columns and {lines} lines: the planner needs {NARROWEST} and {LOWEST}."
 
 
 def first_screen(evaluation: Evaluation, following: TypeNext | None, width: int = 80) -> list[str]:

@@ -176,5 +176,5 @@ def _given_cell(plan: Plan, address: Address) -> Cell:
     if isinstance(value, Quantity) and typed and value.origin_class == "guess":
         tone = Tone.GUESS
     edit = (value.text if isinstance(value, Quantity) else value) if typed and value is not None else " "
-    return Cell(clean(given_text(plan, address)), tone, key_of(plan, address), editable=True, edit=edit)
+    return Cell(clean(given_text(plan, address)), tone, key_of(plan, address), editable=True, edit=clean(edit))
 

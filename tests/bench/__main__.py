@@ -8,6 +8,7 @@ from __future__ import annotations
 import argparse
 from collections.abc import Callable
 from dataclasses import replace
+from functools import partial
 from pathlib import Path
 from statistics import median
 from time import perf_counter
@@ -48,7 +49,7 @@ def main() -> None:
     print(f"{'evaluation of':<16}{'ms':>9}{'bare numpy ms':>15}{'ratio':>8}")
     for count in (6, 100, 1000):
         many, given = of_size(plan, count), floor.arrays(count)
-        ours, bare = interleaved(lambda: evaluate(many), lambda: floor.evaluation(given), runs)
+        ours, bare = interleaved(partial(evaluate, many), partial(floor.evaluation, given), runs)
         note = f"  at most {MOST_AT_1000:g} is wanted" if count == 1000 else ""
         print(f"{count:>5} qubits    {ours * 1e3:9.2f}{bare * 1e3:15.2f}{ours / bare:8.2f}{note}")
 

@@ -123,6 +123,10 @@ def test_white_fm_of_calibration_and_run_together_is_the_worked_row() -> None:
     assert change(white=white) ** 2 + run**2 == near(0.55, rel=1e-12)  # by = regression: (h0/2)(1/T + 1/tau_c)
 
 
+def test_white_fm_falls_as_the_root_of_the_time() -> None:
+    assert clock.stability(white=row(1e-11), sequence_time=row(100.0))[0] == near(1e-12)
+
+
 def test_ageing_is_the_difference_of_the_two_means_of_a_ramp() -> None:
     run, calibration = np.linspace(0, 1, 1001).mean(), np.linspace(-15, -5, 1001).mean()
     assert change(aging=2e-15) == near(2e-15 * (run - calibration), rel=1e-12)
@@ -180,20 +184,12 @@ def test_axes_of_studies() -> None:
     assert_axes_agree(clock.run_time, sequence_time=row(np.nan, 2, 3), longest_wait=row(1, np.nan, 2), shot_time=row(1))
     assert_axes_agree(clock.averaging_time, shots=row(1000), shot_time=time)
     assert_axes_agree(
-        clock.clock_change,
-        white=one[:1],
-        flicker=hundred[:1],
-        aging=row(1e-15),
-        run=time,
-        gap=row(1800),
+        clock.clock_change, white=one[:1], flicker=hundred[:1], aging=row(1e-15), run=time, gap=row(1800),
         averaging=row(0.2),
     )
     assert_axes_agree(clock.required_accuracy, source_share=row(0.3), allowed_noise=time, frequency=time)
     assert_axes_agree(
-        clock.required_stability,
-        source_share=row(0.3),
-        frequency=time,
-        sequence_time=time,
+        clock.required_stability, source_share=row(0.3), frequency=time, sequence_time=time,
         allowed_sequence_error=row(0.1),
     )
     assert_axes_agree(clock.stability, white=one[:1], sequence_time=time)

@@ -30,11 +30,8 @@ def filtered(pulses: int, power: int) -> float:
     period = 4 * pi * pulses
     return float(
         quad(
-            lambda z: toggled(np.asarray(z), pulses) * zeta(power, z / period) / period**power,
-            1e-6,
-            period,
-            limit=4000,
-            epsrel=1e-9,
+            lambda z: toggled(np.asarray(z), pulses) * zeta(power, z / period) / period**power, 1e-6, period,
+            limit=4000, epsrel=1e-9,
         )[0]
     )
 
@@ -152,6 +149,10 @@ def test_free_flicker_noise_far_below_one_over_the_time() -> None:
     assert chi(amplitude=3e3) == near(closed, rel=1e-9)
 
 
+def test_the_slowest_noise_that_counts_has_one_period_a_record() -> None:
+    assert dephasing.lowest_frequency(time=row(1800.0))[0] == near(1 / 1800)
+
+
 def test_static_noise_decays_as_a_gaussian() -> None:
     assert chi(static=100e3, time=2e-6) == near((2 * pi * 100e3 * 2e-6) ** 2 / 2)
     assert chi(static=dephasing.rms_of_t2_star(row(3e-6))[0], time=3e-6) == near(1.0)
@@ -162,6 +163,7 @@ def test_echo_of_the_worked_row() -> None:
     assert dephasing.t2_echo(amplitude=row(3e3), density=NONE)[0] == near(90.115842e-6, rel=1e-8)  # by = regression
     echo = dephasing.t2_echo(amplitude=row(3e3), density=row(1e3))
     assert dephasing.refocused_chi(amplitude=row(3e3), density=row(1e3), time=echo, pulses=row(1)) == near(1.0)
+    assert dephasing.t2_echo(amplitude=NONE, density=row(1e-3))[0] == near(1e3 / pi**2, rel=1e-12)  # very quiet
     assert np.isnan(dephasing.t2_echo(amplitude=NONE, density=NONE))[0]
 
 
@@ -169,13 +171,8 @@ def t2_star(*, static: float = 0.0, amplitude: float = 0.0, density: float = 0.0
     parts = static / np.sqrt([2, 3, 6])  # three shares of one variance
     return float(
         dephasing.t2_star(
-            nuclear=row(parts[0]),
-            barrier=row(parts[1]),
-            magnet=row(parts[2]),
-            amplitude=row(amplitude),
-            density=row(density),
-            lowest=row(lowest),
-            measured=NEVER,
+            nuclear=row(parts[0]), barrier=row(parts[1]), magnet=row(parts[2]), amplitude=row(amplitude),
+            density=row(density), lowest=row(lowest), measured=NEVER,
         )[0]
     )
 
@@ -219,14 +216,8 @@ def test_flicker_noise_slower_than_the_record_never_reaches_one() -> None:
 def test_a_measured_t2_star_stands_for_what_it_contains() -> None:
     measured = row(np.nan, 8e-6)
     static = dephasing.static_noise(
-        nuclear=row(3.0),
-        barrier=row(4.0),
-        magnet=row(12.0),
-        measured_t2_star=measured,
-        drift=row(1.0),
-        calibration=row(2.0),
-        clock=row(3.0),
-        loose=row(4.0),
+        nuclear=row(3.0), barrier=row(4.0), magnet=row(12.0), measured_t2_star=measured, drift=row(1.0),
+        calibration=row(2.0), clock=row(3.0), loose=row(4.0),
     )
     assert static == near(np.sqrt([13**2 + 30, (1 / (np.sqrt(2) * pi * 8e-6)) ** 2 + 30]))
     np.testing.assert_array_equal(dephasing.free_flicker(amplitude=row(5.0), measured_t2_star=measured), [5.0, 0.0])

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
@@ -61,11 +61,8 @@ def spin(**changes: Any) -> Spin:
 
 def random_spin() -> Spin:
     return Spin(
-        g=RANDOM.uniform(-3, 12, 3),
-        g_euler=RANDOM.uniform(-3, 3, 3),
-        field=float(RANDOM.uniform(0.01, 1)),
-        elevation=float(RANDOM.uniform(-1.5, 1.5)),
-        azimuth=float(RANDOM.uniform(-3, 3)),
+        g=RANDOM.uniform(-3, 12, 3), g_euler=RANDOM.uniform(-3, 3, 3), field=float(RANDOM.uniform(0.01, 1)),
+        elevation=float(RANDOM.uniform(-1.5, 1.5)), azimuth=float(RANDOM.uniform(-3, 3)),
         local_field=RANDOM.uniform(-0.1, 0.1, 3),
     )
 
@@ -91,12 +88,12 @@ def derivative(change: str, value: float, step: float) -> float:
     return (spin(**{change: value + step}).frequency() - spin(**{change: value - step}).frequency()) / (2 * step)
 
 
-def component_derivatives(change: str, step: float) -> Array:
+def component_derivatives(change: str, step: float, **start: Any) -> Array:
     """Central differences with the three components of one of its vectors."""
-    vector = getattr(spin(), change)
+    one = spin(**start)
+    vector = getattr(one, change)
     moved = [
-        (spin(**{change: vector + step * unit}).frequency(), spin(**{change: vector - step * unit}).frequency())
-        for unit in np.eye(3)
+        [replace(one, **{change: vector + sign * step * unit}).frequency() for sign in (1, -1)] for unit in np.eye(3)
     ]
     return np.array([(up - down) / (2 * step) for up, down in moved])
 
@@ -212,12 +209,8 @@ def tensor_window(one: Spin, g_uncertainty: Array, euler_uncertainty: Array) -> 
     _, dot, precession = one.vectors()
     return float(
         zeeman.tensor_uncertainty(
-            g=one.g[None],
-            g_uncertainty=g_uncertainty[None],
-            g_euler=one.g_euler[None],
-            euler_uncertainty=euler_uncertainty[None],
-            field_at_dot=dot,
-            precession_vector=precession,
+            g=one.g[None], g_uncertainty=g_uncertainty[None], g_euler=one.g_euler[None],
+            euler_uncertainty=euler_uncertainty[None], field_at_dot=dot, precession_vector=precession,
         )[0]
     )
 
@@ -228,10 +221,11 @@ def test_uncertain_principal_values_move_the_line_as_their_derivatives_say() -> 
     assert tensor_window(spin(), tolerance, np.zeros(3)) == near(expected, rel=1e-6)
 
 
-def test_uncertain_euler_angles_move_the_line_as_their_derivatives_say() -> None:
+@pytest.mark.parametrize("g_euler", [np.radians([30, 2, 10]), np.radians([200, 70, -40]), np.zeros(3)])
+def test_uncertain_euler_angles_move_the_line_as_their_derivatives_say(g_euler: Array) -> None:
     tolerance = np.radians([1.0, 0.5, 2.0])
-    expected = np.linalg.norm(component_derivatives("g_euler", 1e-6) * tolerance)
-    assert tensor_window(spin(), np.zeros(3), tolerance) == near(expected, rel=1e-6)
+    expected = np.linalg.norm(component_derivatives("g_euler", 1e-6, g_euler=g_euler) * tolerance)
+    assert tensor_window(spin(g_euler=g_euler), np.zeros(3), tolerance) == near(expected, rel=1e-6)
 
 
 def test_principal_values_and_angles_are_independent() -> None:
@@ -254,14 +248,8 @@ def test_field_components_are_independent() -> None:
 
 def test_search_window_is_the_root_sum_square_of_its_six_terms() -> None:
     window = zeeman.search_window(
-        remanence=row(1.0),
-        local=row(2.0),
-        tensor=row(3.0),
-        field_slope=row(-2.0),
-        field_uncertainty=row(2.0),
-        elevation_slope=row(5.0),
-        elevation_uncertainty=row(-1.0),
-        azimuth_slope=row(3.0),
+        remanence=row(1.0), local=row(2.0), tensor=row(3.0), field_slope=row(-2.0), field_uncertainty=row(2.0),
+        elevation_slope=row(-10.0), elevation_uncertainty=row(0.5), azimuth_slope=row(3.0),
         azimuth_uncertainty=row(2.0),
     )
     assert window[0] == near(np.sqrt(1 + 4 + 9 + 16 + 25 + 36))
@@ -312,23 +300,10 @@ def test_axes_of_studies_of_spacing_and_window() -> None:
     assert_axes_agree_together(zeeman.spacing, frequency=some, in_use=in_use)
     assert_axes_agree(zeeman.vector_uncertainty, field_response=vector, uncertainty=vector[:1])
     assert_axes_agree(
-        zeeman.tensor_uncertainty,
-        g=g,
-        g_uncertainty=g / 10,
-        g_euler=euler,
-        euler_uncertainty=euler / 10,
-        field_at_dot=vector,
-        precession_vector=vector,
+        zeeman.tensor_uncertainty, g=g, g_uncertainty=g / 10, g_euler=euler, euler_uncertainty=euler / 10,
+        field_at_dot=vector, precession_vector=vector,
     )
     assert_axes_agree(
-        zeeman.search_window,
-        remanence=some,
-        local=some,
-        tensor=some,
-        field_slope=some,
-        field_uncertainty=some[:1],
-        elevation_slope=some,
-        elevation_uncertainty=some[:1],
-        azimuth_slope=some,
-        azimuth_uncertainty=some[:1],
+        zeeman.search_window, remanence=some, local=some, tensor=some, field_slope=some, field_uncertainty=some[:1],
+        elevation_slope=some, elevation_uncertainty=some[:1], azimuth_slope=some, azimuth_uncertainty=some[:1],
     )
