@@ -87,8 +87,10 @@ def edit(options: argparse.Namespace) -> int:
         return BAD_INPUT
     if terminal.usable():
         if options.with_:
-            print("--with is evaluated and never kept: use it with check or report, or type the value in the editor",
-                  file=sys.stderr)
+            print(
+                "--with is evaluated and never kept: use it with check or report, or type the value in the editor",
+                file=sys.stderr,
+            )
             return BAD_INPUT
         terminal.set_escape_delay()
         from planner.tui.app import run
@@ -149,8 +151,10 @@ def words(options: argparse.Namespace) -> int:
         entries = [(line, meaning) for line, meaning in pairwise(lines) if meaning.startswith(" ")]
         lines = [each for entry in entries if options.part.lower() in entry[0].lower() for each in entry]
         if not lines:
-            print(f"no given, result or margin has '{_shown(options.part)}' in its name: see 'planner words'",
-                  file=sys.stderr)
+            print(
+                f"no given, result or margin has '{_shown(options.part)}' in its name: see 'planner words'",
+                file=sys.stderr,
+            )
             return BAD_INPUT
     print("\n".join(lines))
     return MET
@@ -212,38 +216,69 @@ class _Parser(argparse.ArgumentParser):
 
 def _parser() -> _Parser:
     parser = _Parser(
-        prog="planner", formatter_class=argparse.RawDescriptionHelpFormatter, usage="planner [COMMAND] PLAN ...",
+        prog="planner",
+        formatter_class=argparse.RawDescriptionHelpFormatter,
+        usage="planner [COMMAND] PLAN ...",
         description="Plans one cooldown of a spin-qubit device: edits the plan, recomputes frequencies,\n"
-        "clock accuracy and coherence margins on each edit, and says which fall short.")
+        "clock accuracy and coherence margins on each edit, and says which fall short.",
+    )
     parser.example = "planner plans/sq6-03-drafted.toml"
     parser.add_argument("--version", action="version", version=f"planner {__version__}")
     commands = parser.add_subparsers(title="commands", metavar="COMMAND", prog="planner")
     _edit_parser(commands)
-    one = _command(commands, "check", check, "margins of plans, worst first", "planner check plans/*.toml",
-                   "Exit status: 0 all asked margins are met, 1 some are short or unknown, 2 bad input.")
+    one = _command(
+        commands,
+        "check",
+        check,
+        "margins of plans, worst first",
+        "planner check plans/*.toml",
+        "Exit status: 0 all asked margins are met, 1 some are short or unknown, 2 bad input.",
+    )
     one.add_argument("plans", nargs="+", metavar="PLAN", help="plan files")
-    one = _command(commands, "report", report, "all results of a plan",
-                   "planner report plans/sq6-03.toml --format json",
-                   "JSON holds every given, result and margin in SI units and full precision.")
+    one = _command(
+        commands,
+        "report",
+        report,
+        "all results of a plan",
+        "planner report plans/sq6-03.toml --format json",
+        "JSON holds every given, result and margin in SI units and full precision.",
+    )
     one.add_argument("plan", metavar="PLAN", help="plan file")
     one.add_argument("--format", choices=("text", "json"), default="text", help="text (default) or json")
-    one = _command(commands, "words", words, "the dictionary of givens, results and margins", "planner words valley",
-                   "Without a text it prints every entry.")
+    one = _command(
+        commands,
+        "words",
+        words,
+        "the dictionary of givens, results and margins",
+        "planner words valley",
+        "Without a text it prints every entry.",
+    )
     one.add_argument("part", nargs="?", metavar="TEXT", help="only entries whose name contains this")
     return parser
 
 
 def _edit_parser(commands: argparse._SubParsersAction[_Parser]) -> None:
-    one = _command(commands, "edit", edit, "open a plan in the editor (the command may be left out)",
-                   "planner plans/sq6-03-drafted.toml", "Without a terminal it prints what the first screen shows.")
+    one = _command(
+        commands,
+        "edit",
+        edit,
+        "open a plan in the editor (the command may be left out)",
+        "planner plans/sq6-03-drafted.toml",
+        "Without a terminal it prints what the first screen shows.",
+    )
     one.add_argument("plan", metavar="PLAN", help="plan file")
     one.add_argument("--mouse", action="store_true", help="let the program see the mouse")
 
 
-def _command(commands: argparse._SubParsersAction[_Parser], name: str, run: object, summary: str,
-             example: str, more: str) -> argparse.ArgumentParser:
-    parser = commands.add_parser(name, help=summary, formatter_class=argparse.RawDescriptionHelpFormatter,
-                                 description=f"{summary[0].upper()}{summary[1:]}. {more}")
+def _command(
+    commands: argparse._SubParsersAction[_Parser], name: str, run: object, summary: str, example: str, more: str
+) -> argparse.ArgumentParser:
+    parser = commands.add_parser(
+        name,
+        help=summary,
+        formatter_class=argparse.RawDescriptionHelpFormatter,
+        description=f"{summary[0].upper()}{summary[1:]}. {more}",
+    )
     parser.example = example
     parser.set_defaults(run=run)
     if name != "words":

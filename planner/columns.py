@@ -137,7 +137,7 @@ def swept_column(column: Column, values: Array, row: int | None, *, zero_unset: 
     values = values[:, None] if trailing and values.ndim == 1 else values
     values = np.where(values == 0, np.nan, values) if zero_unset else values
     place = 0 if row is None else row
-    spread = np.empty((*values.shape[:values.ndim - trailing], *column.values.shape))
+    spread = np.empty((*values.shape[: values.ndim - trailing], *column.values.shape))
     spread[...] = column.values
     np.moveaxis(spread, -1 - trailing, 0)[place] = values
     why = {other: reason for other, reason in column.why.items() if other != place}
@@ -148,7 +148,9 @@ def _column(plan: Plan, key: str, table: str, stated: list[Value | None], fallba
     given = givens()[key]
     if given.form is not Form.QUANTITY:
         words = (fallback if value is None else value for value in stated)
-        return Column(np.full(len(stated), np.nan), table, words=tuple("" if word is None else str(word) for word in words))
+        return Column(
+            np.full(len(stated), np.nan), table, words=tuple("" if word is None else str(word) for word in words)
+        )
     size = len(plan.stage) if given.per_stage else max(given.sizes)
     if not any(map(_is_stated, stated)) and stated:  # one value for every row: read it once
         one = _numbers(key, given, [fallback], table, size)
@@ -160,7 +162,7 @@ def _column(plan: Plan, key: str, table: str, stated: list[Value | None], fallba
 
 
 def _numbers(key: str, given: Given, entries: Sequence[Value | None], table: str, size: int) -> Column:
-    quantities = cast(Sequence[Quantity | None], entries)  # the given is a quantity, so its values are
+    quantities = cast("Sequence[Quantity | None]", entries)  # the given is a quantity, so its values are
     absent = [] if all(map(_is_stated, quantities)) else [row for row, entry in enumerate(quantities) if entry is None]
     quantities = [entry or _NOTHING for entry in quantities] if absent else quantities
     scalar = not given.per_stage and size == 1

@@ -5,17 +5,12 @@ Exact constants of the SI (h, e, k) carry no uncertainty; the others are quoted 
 
 from __future__ import annotations
 
-from math import pi
 from typing import Final
 
 PLANCK: Final = 6.62607015e-34  # J s, exact (SI 2019)
-REDUCED_PLANCK: Final = PLANCK / (2 * pi)  # J s
 BOLTZMANN: Final = 1.380649e-23  # J/K, exact (SI 2019)
 ELEMENTARY_CHARGE: Final = 1.602176634e-19  # C, exact (SI 2019)
 BOHR_MAGNETON: Final = 9.2740100657e-24  # J/T, CODATA 2022
-NUCLEAR_MAGNETON: Final = 5.0507837393e-27  # J/T, CODATA 2022
-MAGNETIC_CONSTANT: Final = 1.25663706127e-6  # N/A^2, CODATA 2022
-ELECTRON_G: Final = 2.00231930436092  # magnitude, CODATA 2022
 BOHR_MAGNETON_HZ: Final = BOHR_MAGNETON / PLANCK  # Hz/T; CODATA 2022 prints 1.39962449171(44)e10
 MICRO_EV: Final = 1e-6 * ELEMENTARY_CHARGE  # J
 EULER_GAMMA: Final = 0.5772156649015329  # Euler-Mascheroni constant, OEIS A001620

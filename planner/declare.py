@@ -111,9 +111,10 @@ class Given:
     """One value of the plan.
 
     `sizes` are the accepted numbers of components, `options` the words of a choice with a line of explanation each.
-    `planned` are words that a later edition will accept. The value must lie above `above`, at or above `least`, below `below` and at or below `most` (SI; None: no bound).
-    `zero_unset`: a 0 counts as absent; `nonzero`: not every component may be 0; `per_stage`: one
-    number for each stage. `later`: read, checked and written, but no result uses it yet. `example` is a text that would be accepted, `sensible` what people use.
+    `planned` are words that a later edition will accept. The value must lie above `above`, at or above `least`, below `below`
+    and at or below `most` (SI; None: no bound). `zero_unset`: a 0 counts as absent; `nonzero`: not every component may be 0;
+    `per_stage`: one number for each stage. `later`: read, checked and written, but no result uses it yet. `example` is a
+    text that would be accepted, `sensible` what people use.
     """
 
     form: Form
@@ -141,8 +142,9 @@ class Given:
 def given(form: Form | Kind, help: str, nature: Nature, *, locks: Lock | None = None, **rest: Any) -> Any:
     """A dataclass field that declares a given; the field holds what was typed, or None."""
     kind = form if isinstance(form, Kind) else None
-    declared = Given(form=Form.QUANTITY if isinstance(form, Kind) else form, kind=kind, help=help, nature=nature,
-                     locks=locks, **rest)
+    declared = Given(
+        form=Form.QUANTITY if isinstance(form, Kind) else form, kind=kind, help=help, nature=nature, locks=locks, **rest
+    )
     return dataclasses.field(default=None, metadata={"given": declared})
 
 

@@ -80,8 +80,12 @@ def evaluate(plan: Plan, swept: Mapping[str, Array] | None = None) -> Evaluation
     roles = given_column(plan, "qubit.role", plan.qubit).words
     rows = tuple(row for row, role in enumerate(roles) if role != "dead")
     tables = {table: plan.rows(table) for table in ROWS} | {"qubit": tuple(plan.qubit[row] for row in rows)}
-    columns = {key: given_column(plan, key, tables.get(key.partition(".")[0], ())) for key in wiring.needed} | host_columns(plan)
-    names = {table: tuple(str(row.name) for row in rows) for table, rows in tables.items() if table in NAMED} | {"": ("",)}
+    columns = {
+        key: given_column(plan, key, tables.get(key.partition(".")[0], ())) for key in wiring.needed
+    } | host_columns(plan)
+    names = {table: tuple(str(row.name) for row in rows) for table, rows in tables.items() if table in NAMED} | {
+        "": ("",)
+    }
     for key, values in (swept or {}).items():
         _sweep(columns, key, values, names)
     used = tuple(row for row, role in enumerate(columns["qubit.role"].words) if role == "use")
@@ -150,10 +154,10 @@ class _Scope:
                 continue
             absent = column.absent()
             if column.table not in {"", table}:
-                absent = absent[..., list(self.counted(column.table))].any(axis=-1, keepdims=True)
+                absent = np.asarray(absent[..., list(self.counted(column.table))].any(axis=-1, keepdims=True))
             if source.unless:
-                absent = absent & np.isnan(self.columns[source.unless].values)
-            if absent.any():
+                absent = np.asarray(absent & self.columns[source.unless].absent())
+            if np.any(absent):
                 values = np.where(absent[(...,) + (None,) * trailing], np.nan, values)
         return values
 
@@ -211,7 +215,7 @@ class _Scope:
 
 def _with_rows(values: Array, rows: int, trailing: tuple[int, ...]) -> Array:
     """The values with all rows on their axis."""
-    shape = (*values.shape[:max(0, values.ndim - 1 - len(trailing))], rows, *trailing)
+    shape = (*values.shape[: max(0, values.ndim - 1 - len(trailing))], rows, *trailing)
     return values if values.shape == shape else np.broadcast_to(values, shape)
 
 
@@ -223,8 +227,9 @@ def _explained(derived: Derived, values: Array, why: dict[int, Reason]) -> Array
     finite = np.isfinite(values)
     if finite.all():
         return values
-    rows = finite.reshape(-1, len(values.shape) and values.shape[values.ndim - 1 - len(derived.trailing)],
-                          int(np.prod(derived.trailing)))[0].all(axis=-1)
+    rows = finite.reshape(
+        -1, len(values.shape) and values.shape[values.ndim - 1 - len(derived.trailing)], int(np.prod(derived.trailing))
+    )[0].all(axis=-1)
     for row in np.flatnonzero(~rows):
         if int(row) not in why:
             why[int(row)] = _own_reason(derived, infinite=bool(np.isinf(values).any()))

@@ -36,6 +36,10 @@ class QuantityError(ValueError):
     """A text that is no quantity of its kind. The message is one plain sentence to act on."""
 
 
+class Unreadable(QuantityError):
+    """The text has not the form of a quantity; whoever knows the kind adds an example."""
+
+
 @dataclass(frozen=True, slots=True)
 class Amount:
     """A number and its tolerance in the typed unit, None where there is none."""
@@ -149,7 +153,7 @@ def _unreadable(piece: str, text: str) -> QuantityError:
         return QuantityError(f"{quote(text)} is not a number to plan with: write a finite number, or leave it out")
     if not piece.strip():
         return QuantityError(f"{quote(text)} lacks a number beside a comma")
-    return QuantityError(f"{quote(piece)} does not read as a number, then its unit, such as 350 mT or 350 ± 2 mT")
+    return Unreadable(f"{quote(piece)} does not read as a number, then its unit")
 
 
 def _amount(match: re.Match[str], text: str) -> Amount:

@@ -32,7 +32,10 @@ LIMITS: tuple[Limit, ...] = tuple(limit for chapter in CHAPTERS for limit in cha
 # What the chosen material says of itself; everything that depends on it depends on the choice of the material.
 MATERIAL = "chip.material"
 HOST: Mapping[str, Kind] = {
-    "host.hole": NUMBER, "host.valleys": NUMBER, "host.moment": ENERGY_SQUARED, "host.barrier_moment": ENERGY_SQUARED,
+    "host.hole": NUMBER,
+    "host.valleys": NUMBER,
+    "host.moment": ENERGY_SQUARED,
+    "host.barrier_moment": ENERGY_SQUARED,
 }
 
 
@@ -92,8 +95,14 @@ def build(deriveds: tuple[Derived, ...], limits: tuple[Limit, ...]) -> Graph:
     for key in order:
         upstream[key] = parents[key].union(*(upstream.get(parent, frozenset()) for parent in parents[key]))
     used = set().union(*upstream.values(), *map(_limit_keys, limits))
-    return Graph(tuple(by_key[key] for key in order), limits, upstream, tuple(key for key in givens() if key in used),
-                 frozenset(_switches(deriveds, limits)), parents)
+    return Graph(
+        tuple(by_key[key] for key in order),
+        limits,
+        upstream,
+        tuple(key for key in givens() if key in used),
+        frozenset(_switches(deriveds, limits)),
+        parents,
+    )
 
 
 @cache
@@ -106,7 +115,9 @@ def repairable_until(compares: tuple[Compare, ...], typed: frozenset[str]) -> Lo
 def givens() -> dict[str, Given]:
     """Every given, rows under their table's name (`qubit.g`)."""
     tables = [table for table in (*SECTIONS, *ROWS) if table != "all_qubits"]
-    return {f"{table}.{name}" if table else name: given for table in tables for name, given in table_givens(table).items()}
+    return {
+        f"{table}.{name}" if table else name: given for table in tables for name, given in table_givens(table).items()
+    }
 
 
 def _parents(derived: Derived) -> Iterator[str]:

@@ -17,7 +17,7 @@ from pathlib import Path
 from types import MappingProxyType
 from typing import Final
 
-from planner.grammar import LONGEST, Amount, QuantityError, Reading, clean, quote, read, too_small
+from planner.grammar import LONGEST, Amount, QuantityError, Reading, Unreadable, clean, quote, read, too_small
 
 __all__ = [
     "ANGLE", "CHARGE_NOISE", "COUNT", "CURRENT", "DISPLACEMENT", "DRIFT", "ENERGY", "ENERGY_SQUARED", "FIELD",
@@ -184,7 +184,10 @@ def parse(kind: Kind, text: str, *, sizes: tuple[int, ...] = (1,), assume: str =
     text of the quantity then holds it. Without it a number that needs a unit is refused.
     """
     typed, semicolon, origin = text.partition(";")
-    reading = read(typed, sizes=sizes, percent_is_unit="%" in kind.units)
+    try:
+        reading = read(typed, sizes=sizes, percent_is_unit="%" in kind.units)
+    except Unreadable as error:
+        raise QuantityError(f"{error}, such as {kind.example}") from None
     if assume and not reading.unit:
         place = reading.unit_place
         return parse(kind, f"{text[:place]} {assume}{text[place:]}", sizes=sizes)

@@ -36,8 +36,9 @@ class Judged(NamedTuple):
 class Margin:
     """A limit's margin over the rows it judges, and the worst of them.
 
-    `rows` are the positions of the judged rows, `margins` and `codes` (positions in VERDICTS) one for each, of the worse comparison. `worst`
-    is the position of the worst in `rows`, `row` the name of that qubit ("" where the comparison is one of the plan).
+    `rows` are the positions of the judged rows, `margins` and `codes` (positions in VERDICTS) one for each, of the worse
+    comparison. `worst` is the position of the worst in `rows`, `row` the name of that qubit ("" where the
+    comparison is one of the plan).
     `allowed` and `expected` are those of the worst, None where unknown, `reason` says why, `note` why a verdict is tempered.
     `until` is the latest lock of the choices that act on it.
     """
@@ -81,11 +82,19 @@ class Margin:
         return self.code, self.value or 0.0
 
 
-def judge(columns: Mapping[str, Column], limits: Sequence[Limit], used: Sequence[int], names: Mapping[str, tuple[str, ...]],
-          wanted: float) -> tuple[tuple[Margin, ...], dict[str, str]]:
+def judge(
+    columns: Mapping[str, Column],
+    limits: Sequence[Limit],
+    used: Sequence[int],
+    names: Mapping[str, tuple[str, ...]],
+    wanted: float,
+) -> tuple[tuple[Margin, ...], dict[str, str]]:
     """The asked margins over the rows in use, and the reasons of those that are not asked."""
-    typed = frozenset(key for key, given in givens().items()
-                      if given.missing is Missing.FOUND and key in columns and not columns[key].found)
+    typed = frozenset(
+        key
+        for key, given in givens().items()
+        if given.missing is Missing.FOUND and key in columns and not columns[key].found
+    )
     rows, one = np.array(used, dtype=np.intp), np.zeros(1, dtype=np.intp)
     margins: list[Margin] = []
     not_asked: dict[str, str] = {}
@@ -102,9 +111,17 @@ def number_or_none(value: float) -> float | None:
     return None if np.isnan(value) else float(value)
 
 
-def _margin(columns: Mapping[str, Column], typed: frozenset[str], limit: Limit, rows: Rows, names: Mapping[str, tuple[str, ...]],
-            wanted: float) -> Margin:
-    compares = [compare for compare in limit.compares if compare.when is None or columns[compare.when.key].on(compare.when)]
+def _margin(
+    columns: Mapping[str, Column],
+    typed: frozenset[str],
+    limit: Limit,
+    rows: Rows,
+    names: Mapping[str, tuple[str, ...]],
+    wanted: float,
+) -> Margin:
+    compares = [
+        compare for compare in limit.compares if compare.when is None or columns[compare.when.key].on(compare.when)
+    ]
     judged = [_judged(columns, limit, compare, rows, wanted) for compare in compares]
     judged = [one for one in judged if (one.codes != _NOT_MADE).any()] or judged[:1]
     ranks = [_rank(one) for one in judged]
@@ -118,9 +135,20 @@ def _margin(columns: Mapping[str, Column], typed: frozenset[str], limit: Limit, 
     chosen = judged[min(range(len(judged)), key=lambda place: float(ranks[place][worst]))]
     ends = [columns[key] for key in (chosen.compare.allowed, chosen.compare.expected)]
     of_plan = all(column.of_plan for column in ends)
-    return Margin(limit, rows, margins, codes, worst, "" if of_plan else names["qubit"][row], chosen.compare,
-                  number_or_none(chosen.allowed[worst]), number_or_none(chosen.expected[worst]),
-                  _reason(ends, row, names), _note(ends, row) if margins[worst] < 1 else "", repairable_until(tuple(one.compare for one in judged), typed))
+    return Margin(
+        limit,
+        rows,
+        margins,
+        codes,
+        worst,
+        "" if of_plan else names["qubit"][row],
+        chosen.compare,
+        number_or_none(chosen.allowed[worst]),
+        number_or_none(chosen.expected[worst]),
+        _reason(ends, row, names),
+        _note(ends, row) if margins[worst] < 1 else "",
+        repairable_until(tuple(one.compare for one in judged), typed),
+    )
 
 
 def _rank(judged: Judged) -> Array:

@@ -85,9 +85,15 @@ def isotope_fraction(isotope: str) -> tuple[float, float]:
 def material(name: str) -> Material:
     """The shipped material of that name; KeyError if there is none."""
     entry = _resolved(name)
-    return Material(name=name, title=entry["title"], hole=entry["carrier"] == "hole", valleys=entry["valleys"],
-                    nuclei=tuple(_nucleus(nucleus) for nucleus in entry["nuclei"]), barrier=_nucleus(entry["barrier"]),
-                    values={key: _sourced(value) for key, value in entry["values"].items()})
+    return Material(
+        name=name,
+        title=entry["title"],
+        hole=entry["carrier"] == "hole",
+        valleys=entry["valleys"],
+        nuclei=tuple(_nucleus(nucleus) for nucleus in entry["nuclei"]),
+        barrier=_nucleus(entry["barrier"]),
+        values={key: _sourced(value) for key, value in entry["values"].items()},
+    )
 
 
 def _resolved(name: str) -> dict[str, Any]:
@@ -103,10 +109,20 @@ def _nucleus(entry: Mapping[str, Any]) -> Nucleus:
     spin, _ = isotope_fraction(entry["isotope"])
     coupling = parse(ENERGY, entry["coupling"]).value
     assert isinstance(coupling, float)
-    return Nucleus(isotope=entry["isotope"], spin=spin, weight=float(entry["weight"]), coupling=coupling,
-                   source=_sourced({"text": entry["coupling"], **entry}))
+    return Nucleus(
+        isotope=entry["isotope"],
+        spin=spin,
+        weight=float(entry["weight"]),
+        coupling=coupling,
+        source=_sourced({"text": entry["coupling"], **entry}),
+    )
 
 
 def _sourced(entry: Mapping[str, Any]) -> Sourced:
-    return Sourced(text=entry["text"], low=entry.get("low"), high=entry.get("high"), reference=entry["reference"],
-                   status=entry["status"])
+    return Sourced(
+        text=entry["text"],
+        low=entry.get("low"),
+        high=entry.get("high"),
+        reference=entry["reference"],
+        status=entry["status"],
+    )

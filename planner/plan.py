@@ -25,14 +25,43 @@ from planner.values import Value, nearest, read_value
 
 # The chapters in the order of the file; "" is the top level. Rows are lists of tables, `all_qubits` is one table.
 SECTIONS: Mapping[str, type[Chapter]] = {
-    "": Header, "magnet": Magnet, "clock": Clock, "source": Source, "chip": Chip, "model": Model, "workload": Workload,
-    "calibration": Calibration, "all_qubits": Qubit,
+    "": Header,
+    "magnet": Magnet,
+    "clock": Clock,
+    "source": Source,
+    "chip": Chip,
+    "model": Model,
+    "workload": Workload,
+    "calibration": Calibration,
+    "all_qubits": Qubit,
 }
 ROWS: Mapping[str, type[Chapter]] = {
-    "coil": Coil, "phase_noise": PhaseNoise, "part": Part, "stage": Stage, "line": Line, "qubit": Qubit, "pair": Pair,
+    "coil": Coil,
+    "phase_noise": PhaseNoise,
+    "part": Part,
+    "stage": Stage,
+    "line": Line,
+    "qubit": Qubit,
+    "pair": Pair,
 }
-TABLES = ("", "magnet", "coil", "clock", "phase_noise", "source", "chip", "part", "model", "workload", "calibration", "stage",
-          "line", "all_qubits", "qubit", "pair")
+TABLES = (
+    "",
+    "magnet",
+    "coil",
+    "clock",
+    "phase_noise",
+    "source",
+    "chip",
+    "part",
+    "model",
+    "workload",
+    "calibration",
+    "stage",
+    "line",
+    "all_qubits",
+    "qubit",
+    "pair",
+)
 NAMED = tuple(table for table in ROWS if table != "phase_noise")
 
 
@@ -150,7 +179,7 @@ def replaced(plan: Plan, address: Address, value: Value | None) -> Plan:
     if row is None:
         return with_section(plan, table, _with_field(plan.chapter(table), name, value))
     rows = plan.rows(table)
-    return with_rows(plan, table, (*rows[:row], _with_field(rows[row], name, value), *rows[row + 1:]))
+    return with_rows(plan, table, (*rows[:row], _with_field(rows[row], name, value), *rows[row + 1 :]))
 
 
 def with_section(plan: Plan, table: str, section: Chapter) -> Plan:
@@ -204,9 +233,11 @@ def _no_such_key(plan: Plan, key: str) -> str:
 
 
 def unit_shown(plan: Plan, address: Address) -> str:
-    """The unit that the cell of a given shows, and that a bare number typed there gets; "" where it has none."""
-    kind = address.given.kind
+    """The unit that the cell of a given shows, and that a bare number typed there gets; "" where it has none.
+
+    An empty cell shows the unit of the given's example: the first of its kind would make a Rabi frequency of 2 Hz.
+    """
     value = resolved(plan, address).value
-    if isinstance(value, Quantity):
-        return value.unit
-    return kind.first_unit if kind is not None else ""
+    if value is None and address.given.kind is not None:
+        value = read_value(address.given, address.given.example)
+    return value.unit if isinstance(value, Quantity) else ""

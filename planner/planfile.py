@@ -27,12 +27,29 @@ TOO_DEEP = "the file is nested too deeply: a plan has tables and values only"
 _DEEP_KEY = re.compile(r"""(?<![\w\-"'])(?:(?:[\w-]+|"[^"\n]*"|'[^'\n]*')[ \t]*\.[ \t]*){50}""")
 _ENDLESS = re.compile(r"\d[\d_]{4000,}")
 # Keys after which a new file leaves a blank line: git can't merge changes on adjacent lines.
-GROUP_ENDS = frozenset({
-    "format", "note", "fridge_run", "magnet.azimuth", "magnet.drift_persistent", "magnet.noise_persistent",
-    "magnet.since_ramp", "clock.aging", "source.guard", "source.if_half_width", "chip.drive_leak", "model.nuclei",
-    "model.barrier_spinful", "workload.refocusing_pulses", "workload.accumulation", "workload.source_share",
-    "workload.allowed_readout_error", "calibration.wait", "calibration.shot_time",
-})
+GROUP_ENDS = frozenset(
+    {
+        "format",
+        "note",
+        "fridge_run",
+        "magnet.azimuth",
+        "magnet.drift_persistent",
+        "magnet.noise_persistent",
+        "magnet.since_ramp",
+        "clock.aging",
+        "source.guard",
+        "source.if_half_width",
+        "chip.drive_leak",
+        "model.nuclei",
+        "model.barrier_spinful",
+        "workload.refocusing_pulses",
+        "workload.accumulation",
+        "workload.source_share",
+        "workload.allowed_readout_error",
+        "calibration.wait",
+        "calibration.shot_time",
+    }
+)
 
 
 class PlanError(Exception):
@@ -215,8 +232,9 @@ def _read_rows(reader: _Reader, table: str, entries: object) -> None:
     reader.plan = with_rows(reader.plan, table, tuple(rows))
 
 
-def _read_entries(reader: _Reader, table: str, entries: Mapping[str, Any], path: tomltext.Path,
-                  prefix: str) -> dict[str, Value]:
+def _read_entries(
+    reader: _Reader, table: str, entries: Mapping[str, Any], path: tomltext.Path, prefix: str
+) -> dict[str, Value]:
     givens = table_givens(table)
     values: dict[str, Value] = {}
     for key, raw in entries.items():
@@ -344,16 +362,20 @@ def _data(plan: Plan, beside: Mapping[str, Any]) -> dict[str, Any]:
             data.update(values if not table else {table: values} if values else {})
         elif plan.rows(table):
             found_rows = {row["name"]: row for row in beside.get(table, []) if "name" in row}
-            data[table] = [_row_data(table, row, found_rows.get(getattr(row, "name", None), {}))
-                           for row in plan.rows(table)]
+            data[table] = [
+                _row_data(table, row, found_rows.get(getattr(row, "name", None), {})) for row in plan.rows(table)
+            ]
     return data
 
 
 def _row_data(table: str, chapter: Any, found: Mapping[str, Any]) -> dict[str, Any]:
     """The typed values of a chapter in the order of the file, and what else was found there."""
     givens = table_givens(table)
-    typed = {name: _toml(given, value, found.get(name)) for name, given in givens.items()
-             if (value := getattr(chapter, name)) is not None}
+    typed = {
+        name: _toml(given, value, found.get(name))
+        for name, given in givens.items()
+        if (value := getattr(chapter, name)) is not None
+    }
     others = {key: value for key, value in found.items() if key not in givens}
     return typed | {key: value for key, value in others.items() if table or (key not in SECTIONS and key not in ROWS)}
 

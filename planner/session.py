@@ -70,13 +70,13 @@ def with_qubit(session: Session, name: str, after: int) -> Session:
     rows = session.plan.qubit
     source = rows[after] if rows else Qubit()
     row = replace(source, name=str(read_value(Address("qubit", 0, "name").given, name)))
-    return _checked(session, with_rows(session.plan, "qubit", (*rows[:after + 1], row, *rows[after + 1:])))
+    return _checked(session, with_rows(session.plan, "qubit", (*rows[: after + 1], row, *rows[after + 1 :])))
 
 
 def without_qubit(session: Session, index: int) -> Session:
     """The session without one row of qubits. Raises GivenError where it is the last in use."""
     rows = session.plan.qubit
-    return _checked(session, with_rows(session.plan, "qubit", (*rows[:index], *rows[index + 1:])))
+    return _checked(session, with_rows(session.plan, "qubit", (*rows[:index], *rows[index + 1 :])))
 
 
 def free_name(plan: Plan) -> str:

@@ -87,8 +87,9 @@ def _names(plan: Plan) -> Iterator[Problem]:
             if name is None:
                 continue
             if not name or any(character in name for character in NOT_IN_NAMES):
-                yield Problem(f"{table}.{index + 1}.name",
-                              f"'{name}' can't be a name: use letters and digits, no dot, = or quote")
+                yield Problem(
+                    f"{table}.{index + 1}.name", f"'{name}' can't be a name: use letters and digits, no dot, = or quote"
+                )
             elif name in seen:
                 yield Problem(f"{table}.{name}.name", f"the name '{name}' is used twice: give every {table} its own")
             seen.add(name)
@@ -97,8 +98,9 @@ def _names(plan: Plan) -> Iterator[Problem]:
 def _contradictions(plan: Plan) -> Iterator[Problem]:
     low, high = plan.source.low, plan.source.high
     if isinstance(low, Quantity) and isinstance(high, Quantity) and number(low) >= number(high):
-        yield Problem("source.high",
-                      f"'{high.text}' is not above source.low '{low.text}': the band runs from low to high")
+        yield Problem(
+            "source.high", f"'{high.text}' is not above source.low '{low.text}': the band runs from low to high"
+        )
     if plan.qubit and all(_word(plan, row, "role") != "use" for row in range(len(plan.qubit))):
         yield Problem("qubit.role", "no qubit is in use: give at least one the role 'use'")
     yield from _short_gates(plan)
@@ -111,9 +113,11 @@ def _contradictions(plan: Plan) -> Iterator[Problem]:
                 yield Problem(key_of(plan, Address("pair", index, end)), f"there is no qubit '{other}'{hint}")
     for index, line in enumerate(plan.line):
         if plan.stage and isinstance(line.attenuation, Quantity) and components(line.attenuation) != len(plan.stage):
-            yield Problem(key_of(plan, Address("line", index, "attenuation")),
-                          f"'{line.attenuation.text}' has {components(line.attenuation)} values for {len(plan.stage)} "
-                          "stages: write one dB value per stage, 0 where there is none")
+            yield Problem(
+                key_of(plan, Address("line", index, "attenuation")),
+                f"'{line.attenuation.text}' has {components(line.attenuation)} values for {len(plan.stage)} "
+                "stages: write one dB value per stage, 0 where there is none",
+            )
 
 
 def _short_gates(plan: Plan) -> Iterator[Problem]:
@@ -127,8 +131,11 @@ def _short_gates(plan: Plan) -> Iterator[Problem]:
         if isinstance(rabi, Quantity) and number(gate_time) * 2 * number(rabi) < 1 - 1e-9:
             half = 1e9 / (2 * number(rabi))
             name = row_name(plan, "qubit", row)
-            yield Problem("workload.gate_time", f"'{gate_time.text}' is shorter than half a Rabi period of {name}, "
-                          f"{half:.4g} ns: use at least that, or a faster Rabi frequency")
+            yield Problem(
+                "workload.gate_time",
+                f"'{gate_time.text}' is shorter than half a Rabi period of {name}, "
+                f"{half:.4g} ns: use at least that, or a faster Rabi frequency",
+            )
             return
 
 

@@ -83,7 +83,7 @@ def pint_spelling(unit: str) -> str:
 
 def as_pint(values: NDArray[np.float64], si: str) -> pint.Quantity[Any]:
     """An array of SI values as a pint quantity, in a registry of ordinary floats."""
-    made: pint.UnitRegistry[Any] = pint.get_application_registry()  # type: ignore[no-untyped-call]
+    made: pint.UnitRegistry[Any] = pint.get_application_registry()
     return made.Quantity(values, made.Unit(pint_spelling(si)))
 
 

@@ -73,18 +73,25 @@ def _check_size(kind: Kind, quantity: Quantity) -> None:
     numbers = (*_numbers(quantity.value), *_numbers(quantity.tolerance or ()))
     if not all(number == 0 or 1 / LARGEST_SIZE <= abs(number) / scale <= LARGEST_SIZE for number in numbers):
         named = kind.si if unit.level else kind.first_unit
-        raise GivenError(f"'{quantity.text}' is out of range: write at most {f'1e30 {named}'.strip()} and, where it is "
-                         f"not 0, at least {f'1e-30 {named}'.strip()}")
+        raise GivenError(
+            f"'{quantity.text}' is out of range: write at most {f'1e30 {named}'.strip()} and, where it is "
+            f"not 0, at least {f'1e-30 {named}'.strip()}"
+        )
 
 
 def _check_bounds(given: Given, quantity: Quantity) -> None:
     values = _numbers(quantity.value)
-    fits = all((given.above is None or value > given.above) and (given.least is None or value >= given.least)
-               and (given.below is None or value < given.below) and (given.most is None or value <= given.most)
-               for value in values)
+    fits = all(
+        (given.above is None or value > given.above)
+        and (given.least is None or value >= given.least)
+        and (given.below is None or value < given.below)
+        and (given.most is None or value <= given.most)
+        for value in values
+    )
     if not fits:
-        raise GivenError(f"'{quantity.text}' is out of range: {given.help.split(';')[0]} must be "
-                         f"{bounds_text(given, quantity.unit)}")
+        raise GivenError(
+            f"'{quantity.text}' is out of range: {given.help.split(';')[0]} must be {bounds_text(given, quantity.unit)}"
+        )
     if given.nonzero and not any(values):
         raise GivenError(f"'{quantity.text}' is out of range: it must not be 0")
 

@@ -71,7 +71,7 @@ def results(**known: float) -> dict[str, float]:
     aligned = solve(one_wait, -log(1 - 3 * big)) / (gate_time + v["idle"])
     aligned_error, random_error = (1 - exp(-one_wait(sequence_time))) / 3, (1 - (1 - 2 * e) ** v["gates"]) / 2
     stands = allowed_noise(v)
-    w2, _ = clock_parts(v)
+    w2, f2 = clock_parts(v)
     x = H * frequency / (K_B * v["temperature"])
     model = chi(v["t2"]) if measured else nan
     return {
@@ -90,7 +90,7 @@ def results(**known: float) -> dict[str, float]:
         "clock.required_accuracy": v["part"] * stands / frequency, "clock.change": change,
         "clock.required_stability":
             v["part"] * sqrt(-2 * log(1 - 3 * big)) / (2 * pi * frequency * sequence_time * sqrt(2)),
-        "clock.stability": sqrt(w2 / sequence_time),
+        "clock.stability": sqrt(w2 / sequence_time + f2),
         "thermal.ratio": x, "thermal.excited": 1 / (1 + exp(x)), "thermal.readout_error": 1 / (1 + exp(x / 2)),
         "valley.distance": abs(H * frequency - v["valley"]),
         "calibration.wait": wait, "workload.gate_time": gate_time,

@@ -125,7 +125,8 @@ ROOTS: dict[str, tuple[Mapping[str, Entry], str, list[str]]] = {
     "nothing to refocus": ({Q + "frequency_noise": None, "workload.refocusing_pulses": 1},
         "what refocusing leaves needs frequency_noise, relative_noise, gradient or white_noise", [
         "coherence.t2_echo", "coherence.wait_phase", "coherence.gates_aligned"]),
-    "calibration too long": ({"calibration.wait": "1 ms"}, "calibration.wait is too long for T2*", [
+    "calibration too long": ({"calibration.wait": "1 ms"},
+        "after calibration.wait the contrast is below 0.01: the wait is too long for T2*", [
         "noise.calibration", "noise.total", "coherence.wait_phase", "coherence.reachable_gates"]),
     "no T2*": ({}, "qubit.t2_star is not typed", ["noise.unexplained"]),
     "no valley splitting": ({Q + "valley_splitting": None}, "qubit.valley_splitting is not typed", ["valley.distance"]),

@@ -178,7 +178,7 @@ CELLS: dict[str, Cell] = {
     "decimal comma": Cell("magnet.field", "0,5 T", "'0,5 T': a comma is not a decimal point, write '0.5 T'"),
     "thousands": Cell("magnet.field", "1,000 mT", "'1,000 mT' could have thousands marks: write none"),
     "expression": Cell("magnet.field", "9**9**9 mT", "'**9**9 mT' is not a unit of field: use mT, T, uT, nT"),
-    "no number": Cell("magnet.field", "strong", "'strong' does not read as a number, then its unit, such as 350 mT"),
+    "no number": Cell("magnet.field", "strong", "'strong' does not read as a number, then its unit, such as 0.5 mT"),
     "nan": Cell("magnet.field", "nan mT", "'nan mT' is not a number to plan with: write a finite number"),
     "negative tolerance": Cell("magnet.field", "500 ± -2 mT",
         "'500 ± -2 mT' has a negative tolerance: write 0 or more"),

@@ -204,8 +204,10 @@ def test_without_an_edit_of_it_nothing_is_rewritten(case: str) -> None:
 
 
 def test_house_form_keeps_what_is_no_given() -> None:
-    spoilt = UNPATCHABLE["dotted key"].replace("gates = 100", "gates = 100\nlater = [1, 2]").replace(
-        "g = 2.00", "g = 2.00\nolder = {a = 1}"
+    spoilt = (
+        UNPATCHABLE["dotted key"]
+        .replace("gates = 100", "gates = 100\nlater = [1, 2]")
+        .replace("g = 2.00", "g = 2.00\nolder = {a = 1}")
     )
     document = read(f"other = 2\n{spoilt}\n[elsewhere]\nx = 1\n", "plan.toml", keep_unknown=True)
     text, in_house_form = text_of(document, edited(document.plan, Address("magnet", None, "field"), "1 T"))
@@ -372,7 +374,7 @@ HEADS: dict[str, tuple[dict[str, str], dict[str, str]]] = {  # what a table must
 
 
 def text_by(seed: int) -> str:
-    """A plan file with any order of tables and keys, any comments and spacing, either line end, with or without a last."""
+    """A plan file with any order of tables and keys, any comments and spacing, either line end or none at the end."""
     chance = Random(seed)
     lines: list[str] = []
     for head in ["", *chance.sample([head for head in HEADS if head], len(HEADS) - 1)]:

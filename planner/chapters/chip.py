@@ -13,20 +13,59 @@ from planner.materials import LATER, material_titles
 class Chip(Chapter):
     """Givens of the chip."""
 
-    material: Word = given(Form.CHOICE, "host, carrier and isotopes; brings the bath model and its defaults",
-                             Nature.CHOICE, locks=Lock.WAFER, missing=Missing.REQUIRED, options=material_titles(), planned=LATER,
-                             example="si-sige-800ppm")
-    electron_temperature: Typed = given(TEMPERATURE, "temperature of the electrons, not of the mixing chamber",
-                                         Nature.FACT, above=0, most=300, example="95 ± 10 mK; measured CD12",
-                                         sensible="40 to 200 mK")
-    drive_leak: Typed = given(FRACTION, "amplitude of a drive as the neighbours see it", Nature.CHOICE,
-                               locks=Lock.BONDING, missing=Missing.DEFAULT, default="1", least=0, most=1, example="0.1",
-                               sensible="0.01 to 1", later=True)
-    micromagnet_field: Typed = given(FIELD, "smallest field along the micromagnet's easy axis for a repeatable state",
-                                      Nature.FACT, missing=Missing.OFF, above=0, example="250 mT",
-                                      sensible="100 to 500 mT", later=True)
-    micromagnet_axis: Typed = given(NUMBER, "easy axis of the micromagnet in the chip frame", Nature.FACT,
-                                     missing=Missing.DEFAULT, default="1, 0, 0", sizes=(3,), nonzero=True, example="1, 0, 0", later=True)
+    material: Word = given(
+        Form.CHOICE,
+        "host, carrier and isotopes; brings the bath model and its defaults",
+        Nature.CHOICE,
+        locks=Lock.WAFER,
+        missing=Missing.REQUIRED,
+        options=material_titles(),
+        planned=LATER,
+        example="si-sige-800ppm",
+    )
+    electron_temperature: Typed = given(
+        TEMPERATURE,
+        "temperature of the electrons, not of the mixing chamber",
+        Nature.FACT,
+        above=0,
+        most=300,
+        example="95 ± 10 mK; measured CD12",
+        sensible="40 to 200 mK",
+    )
+    drive_leak: Typed = given(
+        FRACTION,
+        "amplitude of a drive as the neighbours see it",
+        Nature.CHOICE,
+        locks=Lock.BONDING,
+        missing=Missing.DEFAULT,
+        default="1",
+        least=0,
+        most=1,
+        example="0.1",
+        sensible="0.01 to 1",
+        later=True,
+    )
+    micromagnet_field: Typed = given(
+        FIELD,
+        "smallest field along the micromagnet's easy axis for a repeatable state",
+        Nature.FACT,
+        missing=Missing.OFF,
+        above=0,
+        example="250 mT",
+        sensible="100 to 500 mT",
+        later=True,
+    )
+    micromagnet_axis: Typed = given(
+        NUMBER,
+        "easy axis of the micromagnet in the chip frame",
+        Nature.FACT,
+        missing=Missing.DEFAULT,
+        default="1, 0, 0",
+        sizes=(3,),
+        nonzero=True,
+        example="1, 0, 0",
+        later=True,
+    )
 
 
 DERIVEDS = ()

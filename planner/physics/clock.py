@@ -12,15 +12,26 @@ from planner.physics import Array
 _GAUSS_POINTS, _GAUSS_WEIGHTS = np.polynomial.legendre.leggauss(12)
 
 
-@law(FRACTION, reference="riley2008", place="eq. of white and flicker FM, table 'power law noise'", deviation_1s=FRACTION,
-     deviation_100s=FRACTION)
+@law(
+    FRACTION,
+    reference="riley2008",
+    place="eq. of white and flicker FM, table 'power law noise'",
+    deviation_1s=FRACTION,
+    deviation_100s=FRACTION,
+)
 def white_fm(*, deviation_1s: Array, deviation_100s: Array) -> Array:
     """w: Allan deviation at 1 s of the white part, from s1^2 = w^2 + F^2 and s100^2 = w^2/100 + F^2."""
     return np.sqrt(np.maximum(0.0, deviation_1s**2 - deviation_100s**2) / 0.99)
 
 
-@law(FRACTION, reference="riley2008", place="eq. of white and flicker FM, table 'power law noise'", deviation_1s=FRACTION,
-     deviation_100s=FRACTION, white=FRACTION)
+@law(
+    FRACTION,
+    reference="riley2008",
+    place="eq. of white and flicker FM, table 'power law noise'",
+    deviation_1s=FRACTION,
+    deviation_100s=FRACTION,
+    white=FRACTION,
+)
 def flicker_fm(*, deviation_1s: Array, deviation_100s: Array, white: Array) -> Array:
     """F: flicker floor of the Allan deviation, from the same two equations; below 3e-5 of s1 it counts as none."""
     squared = np.maximum(0.0, deviation_100s**2 - white**2 / 100)
@@ -46,8 +57,17 @@ def averaging_time(*, shots: Array, shot_time: Array) -> Array:
     return shots * shot_time
 
 
-@law(FRACTION, reference="riley2008", place="variance of two averages, generalised covariance of flicker FM", white=FRACTION,
-     flicker=FRACTION, aging=DRIFT, run=TIME, gap=TIME, averaging=TIME)
+@law(
+    FRACTION,
+    reference="riley2008",
+    place="variance of two averages, generalised covariance of flicker FM",
+    white=FRACTION,
+    flicker=FRACTION,
+    aging=DRIFT,
+    run=TIME,
+    gap=TIME,
+    averaging=TIME,
+)
 def clock_change(*, white: Array, flicker: Array, aging: Array, run: Array, gap: Array, averaging: Array) -> Array:
     """Expected fractional change of the reference between a calibration and a run `gap` later.
 
@@ -64,19 +84,34 @@ def required_accuracy(*, source_share: Array, allowed_noise: Array, frequency: A
     return source_share * allowed_noise / frequency
 
 
-@law(FRACTION, reference="ball2016", place="phase of a two-sample variance", source_share=FRACTION, frequency=FREQUENCY,
-     sequence_time=TIME, allowed_sequence_error=FRACTION)
-def required_stability(*, source_share: Array, frequency: Array, sequence_time: Array,
-                       allowed_sequence_error: Array) -> Array:
+@law(
+    FRACTION,
+    reference="ball2016",
+    place="phase of a two-sample variance",
+    source_share=FRACTION,
+    frequency=FREQUENCY,
+    sequence_time=TIME,
+    allowed_sequence_error=FRACTION,
+)
+def required_stability(
+    *, source_share: Array, frequency: Array, sequence_time: Array, allowed_sequence_error: Array
+) -> Array:
     """Allan deviation at the sequence's length at which the clock takes its share of the phase that the sequence allows."""
     phase = np.sqrt(-2 * np.log1p(-3 * allowed_sequence_error))
     return source_share * phase / (2 * np.pi * frequency * sequence_time * np.sqrt(2))
 
 
-@law(FRACTION, reference="riley2008", place="white FM slope", white=FRACTION, sequence_time=TIME)
-def stability(*, white: Array, sequence_time: Array) -> Array:
-    """Expected Allan deviation at the sequence's length, w / sqrt(T); below 0.1 s only an upper bound."""
-    return white / np.sqrt(sequence_time)
+@law(
+    FRACTION,
+    reference="riley2008",
+    place="white FM slope and flicker floor",
+    white=FRACTION,
+    flicker=FRACTION,
+    sequence_time=TIME,
+)
+def stability(*, white: Array, flicker: Array, sequence_time: Array) -> Array:
+    """Expected Allan deviation at the sequence's length, sqrt(w^2/T + F^2); below 0.1 s only an upper bound."""
+    return np.sqrt(white**2 / sequence_time + flicker**2)
 
 
 def below_allan_range(*, sequence_time: Array) -> NDArray[np.bool_]:
@@ -88,15 +123,17 @@ def flicker_variance(*, run: Array, gap: Array, averaging: Array) -> Array:
     """Var(mean over the run - mean over the calibration) of flicker FM with Allan deviation 1.
 
     With K(s) = s^2 ln|s| / (4 ln 2) the double difference is the mean of 2 ln s + 3 over both intervals, so
-    Var = (3 + 2 <ln(gap + a + b)> - ln run - ln averaging) / (2 ln 2). The mean is taken in closed form over both where
-    they are comparable with the gap, otherwise (where that cancels) in closed form over one and by Gauss over the other.
+    Var = (3 + 2 <ln(gap + a + b)> - ln run - ln averaging) / (2 ln 2). The mean over the longer interval is in closed form;
+    over the shorter one by Gauss, with s ln s in closed form too where the gap is so short that it is not smooth.
     """
     run, gap, averaging = np.broadcast_arrays(run, gap, averaging)
     short, long = np.minimum(run, averaging), np.maximum(run, averaging)
     starts = gap[..., None] + short[..., None] * (1 + _GAUSS_POINTS) / 2
     smooth = (_mean_log(starts, long[..., None]) * _GAUSS_WEIGHTS / 2).sum(axis=-1)
-    corners = _primitive(gap + short + long) - _primitive(gap + short) - _primitive(gap + long) + _primitive(gap)
-    mean = np.where(short < 0.1 * gap, smooth, (corners / (short * long) - 3) / 2)
+    ends = starts + long[..., None]
+    upper = (ends * np.log(ends) * _GAUSS_WEIGHTS / 2).sum(axis=-1)
+    lower = (_primitive(gap + short) - _primitive(gap)) / short
+    mean = np.where(short < 0.1 * gap, smooth, (upper - lower) / long - 1)
     return (3 + 2 * mean - np.log(run) - np.log(averaging)) / (2 * np.log(2))
 
 
@@ -111,4 +148,5 @@ def _mean_log(start: Array, length: Array) -> Array:
 
 
 def _primitive(s: Array) -> Array:
-    return s**2 * np.log(np.where(s > 0, s, 1.0))
+    """Integral of s ln s."""
+    return s**2 * (np.log(np.where(s > 0, s, 1.0)) / 2 - 0.25)

@@ -29,8 +29,14 @@ def lowest_frequency(*, time: Array) -> Array:
     return 1 / time
 
 
-@law(FREQUENCY, reference="ithier2005", place="free evolution under 1/f noise", amplitude=FREQUENCY_NOISE, lowest=FREQUENCY,
-     time=TIME)
+@law(
+    FREQUENCY,
+    reference="ithier2005",
+    place="free evolution under 1/f noise",
+    amplitude=FREQUENCY_NOISE,
+    lowest=FREQUENCY,
+    time=TIME,
+)
 def flicker_rms(*, amplitude: Array, lowest: Array, time: Array) -> Array:
     """Static rms that dephases as much as free 1/f noise after `time`: sqrt(2 chi)/(2 pi t) = A sqrt(2 J(2 pi f_l t))."""
     return amplitude * np.sqrt(2 * flicker_integral(2 * np.pi * lowest * time))
@@ -42,12 +48,34 @@ def white_rms(*, density: Array, time: Array) -> Array:
     return np.sqrt(density / (2 * time))
 
 
-@law(FREQUENCY, reference="jcgm100", place="5.1.2", nuclear=FREQUENCY, barrier=FREQUENCY, magnet=FREQUENCY,
-     measured_t2_star=TIME, drift=FREQUENCY, calibration=FREQUENCY, clock=FREQUENCY, loose=FREQUENCY)
-def static_noise(*, nuclear: Array, barrier: Array, magnet: Array, measured_t2_star: Array, drift: Array, calibration: Array,
-                 clock: Array, loose: Array) -> Array:
+@law(
+    FREQUENCY,
+    reference="jcgm100",
+    place="5.1.2",
+    nuclear=FREQUENCY,
+    barrier=FREQUENCY,
+    magnet=FREQUENCY,
+    measured_t2_star=TIME,
+    drift=FREQUENCY,
+    calibration=FREQUENCY,
+    clock=FREQUENCY,
+    loose=FREQUENCY,
+)
+def static_noise(
+    *,
+    nuclear: Array,
+    barrier: Array,
+    magnet: Array,
+    measured_t2_star: Array,
+    drift: Array,
+    calibration: Array,
+    clock: Array,
+    loose: Array,
+) -> Array:
     """Root-sum-square of what stays put over one sequence; a measured T2* stands for nuclei, barrier and magnet."""
-    bath = np.where(np.isnan(measured_t2_star), nuclear**2 + barrier**2 + magnet**2, rms_of_t2_star(measured_t2_star)**2)
+    bath = np.where(
+        np.isnan(measured_t2_star), nuclear**2 + barrier**2 + magnet**2, rms_of_t2_star(measured_t2_star) ** 2
+    )
     return np.sqrt(bath + drift**2 + calibration**2 + clock**2 + loose**2)
 
 
@@ -63,43 +91,84 @@ def free_white(*, density: Array, measured_t2_star: Array) -> Array:
     return np.where(np.isnan(measured_t2_star), density, 0.0)
 
 
-@law(FREQUENCY, reference="jcgm100", place="5.1.2", static=FREQUENCY, amplitude=FREQUENCY_NOISE, density=WHITE_NOISE,
-     lowest=FREQUENCY, time=TIME)
+@law(
+    FREQUENCY,
+    reference="jcgm100",
+    place="5.1.2",
+    static=FREQUENCY,
+    amplitude=FREQUENCY_NOISE,
+    density=WHITE_NOISE,
+    lowest=FREQUENCY,
+    time=TIME,
+)
 def total_noise(*, static: Array, amplitude: Array, density: Array, lowest: Array, time: Array) -> Array:
     """Root-sum-square of the static noise and of what 1/f and white noise do over `time`."""
     flicker = flicker_rms(amplitude=amplitude, lowest=lowest, time=time)
-    return np.sqrt(static**2 + flicker**2 + white_rms(density=density, time=time)**2)
+    return np.sqrt(static**2 + flicker**2 + white_rms(density=density, time=time) ** 2)
 
 
-@law(TIME, reference="ithier2005", place="1/e time of the free decay", nuclear=FREQUENCY, barrier=FREQUENCY, magnet=FREQUENCY,
-     amplitude=FREQUENCY_NOISE, density=WHITE_NOISE, lowest=FREQUENCY, measured=TIME)
-def t2_star(*, nuclear: Array, barrier: Array, magnet: Array, amplitude: Array, density: Array, lowest: Array,
-            measured: Array) -> Array:
+@law(
+    TIME,
+    reference="ithier2005",
+    place="1/e time of the free decay",
+    nuclear=FREQUENCY,
+    barrier=FREQUENCY,
+    magnet=FREQUENCY,
+    amplitude=FREQUENCY_NOISE,
+    density=WHITE_NOISE,
+    lowest=FREQUENCY,
+    measured=TIME,
+)
+def t2_star(
+    *, nuclear: Array, barrier: Array, magnet: Array, amplitude: Array, density: Array, lowest: Array, measured: Array
+) -> Array:
     """T2*: measured, else the time at which chi of nuclei, barrier, magnet, charge and white noise is 1; nan if never."""
     static = np.sqrt(nuclear**2 + barrier**2 + magnet**2)
     model = time_of_chi(chi=np.asarray(1.0), static=static, amplitude=amplitude, density=density, lowest=lowest)
     return np.where(np.isnan(measured), model, measured)
 
 
-@law(TIME, reference="cywinski2008", place="Hahn echo under 1/f and white noise", amplitude=FREQUENCY_NOISE,
-     density=WHITE_NOISE)
+@law(
+    TIME,
+    reference="cywinski2008",
+    place="Hahn echo under 1/f and white noise",
+    amplitude=FREQUENCY_NOISE,
+    density=WHITE_NOISE,
+)
 def t2_echo(*, amplitude: Array, density: Array) -> Array:
     """1/e time after one refocusing pulse: chi = (2 pi A t)^2 ln(2)/2 + pi^2 S t = 1; nan where there is no such noise."""
     return refocused_time(chi=np.asarray(1.0), amplitude=amplitude, density=density, pulses=np.asarray(1.0))
 
 
-@law(ANGLE, reference="cywinski2008", place="filter functions", total=FREQUENCY, amplitude=FREQUENCY_NOISE,
-     density=WHITE_NOISE, wait=TIME, pulses=COUNT)
+@law(
+    ANGLE,
+    reference="cywinski2008",
+    place="filter functions",
+    total=FREQUENCY,
+    amplitude=FREQUENCY_NOISE,
+    density=WHITE_NOISE,
+    wait=TIME,
+    pulses=COUNT,
+)
 def wait_phase(*, total: Array, amplitude: Array, density: Array, wait: Array, pulses: Array) -> Array:
     """Rms phase over the longest wait: 2 pi t sigma where nothing refocuses, else sqrt(2 chi_n) of charge and white noise."""
     refocused = np.sqrt(2 * refocused_chi(amplitude=amplitude, density=density, time=wait, pulses=pulses))
     return np.where(pulses > 0, refocused, 2 * np.pi * wait * total)
 
 
-@law(FREQUENCY, measured=TIME, nuclear=FREQUENCY, barrier=FREQUENCY, magnet=FREQUENCY, amplitude=FREQUENCY_NOISE,
-     density=WHITE_NOISE, lowest=FREQUENCY)
-def unexplained_noise(*, measured: Array, nuclear: Array, barrier: Array, magnet: Array, amplitude: Array, density: Array,
-                      lowest: Array) -> Array:
+@law(
+    FREQUENCY,
+    measured=TIME,
+    nuclear=FREQUENCY,
+    barrier=FREQUENCY,
+    magnet=FREQUENCY,
+    amplitude=FREQUENCY_NOISE,
+    density=WHITE_NOISE,
+    lowest=FREQUENCY,
+)
+def unexplained_noise(
+    *, measured: Array, nuclear: Array, barrier: Array, magnet: Array, amplitude: Array, density: Array, lowest: Array
+) -> Array:
     """What the model leaves unexplained of a measured T2*: sqrt(2 max(0, 1 - chi_model(T2*)))/(2 pi T2*)."""
     static = np.sqrt(nuclear**2 + barrier**2 + magnet**2)
     model = free_chi(static=static, amplitude=amplitude, density=density, lowest=lowest, time=measured)
@@ -115,18 +184,18 @@ def rms_of_t2_star(t2_star: Array) -> Array:
 def free_chi(*, static: Array, amplitude: Array, density: Array, lowest: Array, time: Array) -> Array:
     """chi after free evolution over `time`; 0 at time 0."""
     flicker = np.where(time > 0, flicker_integral(2 * np.pi * lowest * np.where(time > 0, time, 1.0)), 0.0)
-    return (2 * np.pi * time)**2 * (static**2 / 2 + amplitude**2 * flicker) + np.pi**2 * density * time
+    return (2 * np.pi * time) ** 2 * (static**2 / 2 + amplitude**2 * flicker) + np.pi**2 * density * time
 
 
 def refocused_chi(*, amplitude: Array, density: Array, time: Array, pulses: Array) -> Array:
     """chi after `time` with n refocusing pulses: only 1/f and white noise are left."""
-    return (2 * np.pi * amplitude * time)**2 * refocusing_weight(pulses) / 2 + np.pi**2 * density * time
+    return (2 * np.pi * amplitude * time) ** 2 * refocusing_weight(pulses) / 2 + np.pi**2 * density * time
 
 
 def refocused_time(*, chi: Array, amplitude: Array, density: Array, pulses: Array) -> Array:
     """Time at which the refocused chi reaches `chi`; nan where it never does."""
     half_white = np.pi**2 * density / 2
-    quadratic = 2 * (np.pi * amplitude)**2 * refocusing_weight(pulses)
+    quadratic = 2 * (np.pi * amplitude) ** 2 * refocusing_weight(pulses)
     below = half_white + np.sqrt(half_white**2 + quadratic * chi)
     return np.where(below > 0, chi / np.where(below > 0, below, 1.0), np.nan)
 
@@ -140,7 +209,7 @@ def time_of_chi(*, chi: Array, static: Array, amplitude: Array, density: Array, 
     time = np.minimum(gaussian, chi / (np.pi**2 * density + 1e-300))
     for _ in range(60):
         z = 2 * np.pi * lowest * time
-        quadratic = (2 * np.pi * time)**2
+        quadratic = (2 * np.pi * time) ** 2
         integral = flicker_integral(z)
         white = np.pi**2 * density * time
         value = quadratic * (static**2 / 2 + amplitude**2 * integral) + white
@@ -162,7 +231,9 @@ def flicker_integral(z: Array) -> Array:
     z = np.asarray(z, dtype=float)
     few = not np.any(z > 0.05)
     head = (1.5 - EULER_GAMMA - np.log(z)) / 2 + _series(np.minimum(z, _SERIES_END), _FEW if few else len(_SERIES))
-    return np.where(z > _SERIES_END, _far_integral(np.maximum(z, _SERIES_END)), head) if np.any(z > _SERIES_END) else head
+    return (
+        np.where(z > _SERIES_END, _far_integral(np.maximum(z, _SERIES_END)), head) if np.any(z > _SERIES_END) else head
+    )
 
 
 def refocusing_weight(pulses: Array) -> Array:
@@ -208,4 +279,4 @@ def _far_integral(z: Array) -> Array:
 
 
 def _one_minus_cos(z: Array) -> Array:
-    return 2 * np.sin(z / 2)**2
+    return 2 * np.sin(z / 2) ** 2

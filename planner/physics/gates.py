@@ -40,24 +40,58 @@ def noise_time(*, wait: Array, gate_time: Array) -> Array:
     return np.where(np.isnan(wait), gate_time, wait)
 
 
-@law(FREQUENCY, reference="jcgm100", place="5.1.2", static=FREQUENCY, amplitude=FREQUENCY_NOISE, lowest=FREQUENCY,
-     duration=TIME)
+@law(
+    FREQUENCY,
+    reference="jcgm100",
+    place="5.1.2",
+    static=FREQUENCY,
+    amplitude=FREQUENCY_NOISE,
+    lowest=FREQUENCY,
+    duration=TIME,
+)
 def pulse_detuning(*, static: Array, amplitude: Array, lowest: Array, duration: Array) -> Array:
     """Rms detuning during a pulse: static noise and the 1/f noise of that duration."""
     return np.hypot(static, flicker_rms(amplitude=amplitude, lowest=lowest, time=duration))
 
 
-@law(FRACTION, reference="pedersen2007", place="average fidelity of a unitary, for a detuned pi rotation",
-     detuning=FREQUENCY, rabi_frequency=FREQUENCY, density=WHITE_NOISE, duration=TIME)
+@law(
+    FRACTION,
+    reference="pedersen2007",
+    place="average fidelity of a unitary, for a detuned pi rotation",
+    detuning=FREQUENCY,
+    rabi_frequency=FREQUENCY,
+    density=WHITE_NOISE,
+    duration=TIME,
+)
 def gate_error(*, detuning: Array, rabi_frequency: Array, density: Array, duration: Array) -> Array:
     """Average infidelity of a pi pulse under Gaussian slow detuning, exact, plus (1 - exp(-pi^2 S t))/3 of white noise."""
-    return detuned_pulse_error(detuning / rabi_frequency) - np.expm1(-np.pi**2 * density * duration) / 3
+    return detuned_pulse_error(detuning / rabi_frequency) - np.expm1(-(np.pi**2) * density * duration) / 3
 
 
-@law(FRACTION, reference="nielsen2002", place="average fidelity of a dephasing and relaxing qubit", gate_error=FRACTION,
-     static=FREQUENCY, amplitude=FREQUENCY_NOISE, density=WHITE_NOISE, lowest=FREQUENCY, gate_time=TIME, idle=TIME, t1=TIME)
-def error_per_gate(*, gate_error: Array, static: Array, amplitude: Array, density: Array, lowest: Array, gate_time: Array,
-                   idle: Array, t1: Array) -> Array:
+@law(
+    FRACTION,
+    reference="nielsen2002",
+    place="average fidelity of a dephasing and relaxing qubit",
+    gate_error=FRACTION,
+    static=FREQUENCY,
+    amplitude=FREQUENCY_NOISE,
+    density=WHITE_NOISE,
+    lowest=FREQUENCY,
+    gate_time=TIME,
+    idle=TIME,
+    t1=TIME,
+)
+def error_per_gate(
+    *,
+    gate_error: Array,
+    static: Array,
+    amplitude: Array,
+    density: Array,
+    lowest: Array,
+    gate_time: Array,
+    idle: Array,
+    t1: Array,
+) -> Array:
     """Error of one gate and its idle time: pulse, free dephasing while idle, and relaxation where T1 is given; at most 1/2."""
     chi = free_chi(static=static, amplitude=amplitude, density=density, lowest=lowest, time=idle)
     ratio = np.where(np.isnan(t1), 0.0, (gate_time + idle) / t1)
@@ -79,11 +113,34 @@ def gates_randomised(*, error: Array, allowed: Array) -> Array:
         return np.where(error >= 0.5, 0.0, np.log1p(-2 * allowed) / np.log1p(-2 * small))
 
 
-@law(NUMBER, reference="cywinski2008", place="filter functions", static=FREQUENCY, free_amplitude=FREQUENCY_NOISE,
-     free_density=WHITE_NOISE, amplitude=FREQUENCY_NOISE, density=WHITE_NOISE, lowest=FREQUENCY, pulses=COUNT,
-     allowed=FRACTION, gate_time=TIME, idle=TIME)
-def gates_aligned(*, static: Array, free_amplitude: Array, free_density: Array, amplitude: Array, density: Array,
-                  lowest: Array, pulses: Array, allowed: Array, gate_time: Array, idle: Array) -> Array:
+@law(
+    NUMBER,
+    reference="cywinski2008",
+    place="filter functions",
+    static=FREQUENCY,
+    free_amplitude=FREQUENCY_NOISE,
+    free_density=WHITE_NOISE,
+    amplitude=FREQUENCY_NOISE,
+    density=WHITE_NOISE,
+    lowest=FREQUENCY,
+    pulses=COUNT,
+    allowed=FRACTION,
+    gate_time=TIME,
+    idle=TIME,
+)
+def gates_aligned(
+    *,
+    static: Array,
+    free_amplitude: Array,
+    free_density: Array,
+    amplitude: Array,
+    density: Array,
+    lowest: Array,
+    pulses: Array,
+    allowed: Array,
+    gate_time: Array,
+    idle: Array,
+) -> Array:
     """Gates until (1 - W)/3 = E when errors add up as one wait, with refocusing pulses where there are any; nan if never."""
     chi = -np.log1p(-3 * allowed)
     free = time_of_chi(chi=chi, static=static, amplitude=free_amplitude, density=free_density, lowest=lowest)
@@ -91,11 +148,36 @@ def gates_aligned(*, static: Array, free_amplitude: Array, free_density: Array, 
     return np.where(pulses > 0, refocused, free) / (gate_time + idle)
 
 
-@law(FRACTION, reference="nielsen2002", place="composition of depolarised gates; dephased wait", error=FRACTION, gates=COUNT,
-     aligned=NUMBER, static=FREQUENCY, free_amplitude=FREQUENCY_NOISE, free_density=WHITE_NOISE, amplitude=FREQUENCY_NOISE,
-     density=WHITE_NOISE, lowest=FREQUENCY, pulses=COUNT, sequence_time=TIME)
-def sequence_error(*, error: Array, gates: Array, aligned: Array, static: Array, free_amplitude: Array, free_density: Array,
-                   amplitude: Array, density: Array, lowest: Array, pulses: Array, sequence_time: Array) -> Array:
+@law(
+    FRACTION,
+    reference="nielsen2002",
+    place="composition of depolarised gates; dephased wait",
+    error=FRACTION,
+    gates=COUNT,
+    aligned=NUMBER,
+    static=FREQUENCY,
+    free_amplitude=FREQUENCY_NOISE,
+    free_density=WHITE_NOISE,
+    amplitude=FREQUENCY_NOISE,
+    density=WHITE_NOISE,
+    lowest=FREQUENCY,
+    pulses=COUNT,
+    sequence_time=TIME,
+)
+def sequence_error(
+    *,
+    error: Array,
+    gates: Array,
+    aligned: Array,
+    static: Array,
+    free_amplitude: Array,
+    free_density: Array,
+    amplitude: Array,
+    density: Array,
+    lowest: Array,
+    pulses: Array,
+    sequence_time: Array,
+) -> Array:
     """Error of the whole circuit by the accumulation that is judged."""
     free = free_chi(static=static, amplitude=free_amplitude, density=free_density, lowest=lowest, time=sequence_time)
     refocused = refocused_chi(amplitude=amplitude, density=density, time=sequence_time, pulses=pulses)
@@ -111,11 +193,30 @@ def reachable_gates(*, randomised: Array, aligned_gates: Array, aligned: Array) 
     return np.where(aligned > 0, aligned_gates, randomised)
 
 
-@law(FREQUENCY, reference="pedersen2007", place="average fidelity of a unitary, solved for the detuning", rabi_frequency=FREQUENCY,
-     idle=TIME, wait=TIME, pulses=COUNT, gates=COUNT, allowed_phase=ANGLE, allowed_gate_error=FRACTION,
-     allowed_sequence_error=FRACTION)
-def allowed_noise(*, rabi_frequency: Array, idle: Array, wait: Array, pulses: Array, gates: Array, allowed_phase: Array,
-                  allowed_gate_error: Array, allowed_sequence_error: Array) -> Array:
+@law(
+    FREQUENCY,
+    reference="pedersen2007",
+    place="average fidelity of a unitary, solved for the detuning",
+    rabi_frequency=FREQUENCY,
+    idle=TIME,
+    wait=TIME,
+    pulses=COUNT,
+    gates=COUNT,
+    allowed_phase=ANGLE,
+    allowed_gate_error=FRACTION,
+    allowed_sequence_error=FRACTION,
+)
+def allowed_noise(
+    *,
+    rabi_frequency: Array,
+    idle: Array,
+    wait: Array,
+    pulses: Array,
+    gates: Array,
+    allowed_phase: Array,
+    allowed_gate_error: Array,
+    allowed_sequence_error: Array,
+) -> Array:
     """The slow detuning that a qubit stands: the smallest of what phase, gate error and sequence error allow."""
     phase = np.where(pulses > 0, np.inf, allowed_phase / (2 * np.pi * wait))
     one_gate = -np.expm1(np.log1p(-2 * allowed_sequence_error) / gates) / 2
@@ -140,14 +241,14 @@ def detuned_pulse_error(ratio: Array) -> Array:
 def _lost(r: Array) -> Array:
     """Average infidelity of a pi pulse detuned by r Rabi frequencies."""
     squared = 1 + r * r
-    return 2 / 3 * (r * r + np.cos(np.pi / 2 * np.sqrt(squared))**2) / squared
+    return 2 / 3 * (r * r + np.cos(np.pi / 2 * np.sqrt(squared)) ** 2) / squared
 
 
 def _wide_average(ratio: Array) -> Array:
-    density = np.exp(-(_GRID / ratio[..., None])**2 / 2)
+    density = np.exp(-((_GRID / ratio[..., None]) ** 2) / 2)
     density[..., 0] /= 2
     kept = (1 - 1.5 * _lost(_GRID)) * density
-    tail = np.exp(-(_GRID_END / ratio)**2 / 2) / (2 * _GRID_END)
+    tail = np.exp(-((_GRID_END / ratio) ** 2) / 2) / (2 * _GRID_END)
     return 2 / 3 * (1 - 2 / (np.sqrt(2 * np.pi) * ratio) * (kept.sum(axis=-1) * _GRID_STEP + tail))
 
 
@@ -159,7 +260,7 @@ def _tolerated_ratio(error: Array, idle: Array) -> Array:
     """
     error, idle = np.broadcast_arrays(error, idle)
     target = np.log(error)
-    previous = np.log(error / (2 / 3 + (2 * np.pi * idle)**2 / 6)) / 2
+    previous = np.log(error / (2 / 3 + (2 * np.pi * idle) ** 2 / 6)) / 2
     low = _log_error(previous, idle) - target
     current = previous - low / 2
     for _ in range(60):
@@ -174,4 +275,4 @@ def _tolerated_ratio(error: Array, idle: Array) -> Array:
 
 def _log_error(log_ratio: Array, idle: Array) -> Array:
     ratio = np.exp(log_ratio)
-    return np.log(detuned_pulse_error(ratio) - np.expm1(-(2 * np.pi * idle * ratio)**2 / 2) / 3)
+    return np.log(detuned_pulse_error(ratio) - np.expm1(-((2 * np.pi * idle * ratio) ** 2) / 2) / 3)

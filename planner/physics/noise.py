@@ -27,9 +27,18 @@ from planner.physics import Array
 HOUR = 3600.0
 
 
-@law(FREQUENCY, field_slope=FREQUENCY_PER_FIELD, field=FIELD, drift=DRIFT, settle_slope=DRIFT, since_ramp=TIME, interval=TIME)
-def drift_noise(*, field_slope: Array, field: Array, drift: Array, settle_slope: Array, since_ramp: Array,
-                interval: Array) -> Array:
+@law(
+    FREQUENCY,
+    field_slope=FREQUENCY_PER_FIELD,
+    field=FIELD,
+    drift=DRIFT,
+    settle_slope=DRIFT,
+    since_ramp=TIME,
+    interval=TIME,
+)
+def drift_noise(
+    *, field_slope: Array, field: Array, drift: Array, settle_slope: Array, since_ramp: Array, interval: Array
+) -> Array:
     """Frequency change over one calibration interval by the magnet's drift and, after a ramp, its settling.
 
     The settling slope falls as 1/t from its value at one hour; earlier than that counts as one hour.
@@ -38,11 +47,18 @@ def drift_noise(*, field_slope: Array, field: Array, drift: Array, settle_slope:
     return np.abs(field_slope) * field * (drift + settle_slope / hours) * interval
 
 
-@law(FREQUENCY, reference="itano1993", place="projection noise at mid fringe", contrast=FRACTION, wait=TIME, t2_star=TIME,
-     shots=COUNT)
+@law(
+    FREQUENCY,
+    reference="itano1993",
+    place="projection noise at mid fringe",
+    contrast=FRACTION,
+    wait=TIME,
+    t2_star=TIME,
+    shots=COUNT,
+)
 def calibration_noise(*, contrast: Array, wait: Array, t2_star: Array, shots: Array) -> Array:
     """Precision 1/(2 pi V tau sqrt N) of a Ramsey calibration, V = contrast exp(-(tau/T2*)^2); nan where V is below 0.01."""
-    visible = contrast * np.exp(-(wait / t2_star)**2)
+    visible = contrast * np.exp(-((wait / t2_star) ** 2))
     return np.where(visible < 0.01, np.nan, 1 / (2 * np.pi * visible * wait * np.sqrt(shots)))
 
 
@@ -64,11 +80,34 @@ def field_noise_seen(*, field_noise: Array, measured_t2_star: Array) -> Array:
     return np.fmin(field_noise, 1 / (np.sqrt(2) * np.pi * measured_t2_star))
 
 
-@law(FREQUENCY_NOISE, reference="struck2020", place="charge noise through a field gradient", typed=FREQUENCY_NOISE,
-     own_relative=RELATIVE_NOISE, frequency=FREQUENCY, gradient=GRADIENT, g=NUMBER, displacement=DISPLACEMENT,
-     charge_noise=CHARGE_NOISE, material_relative=RELATIVE_NOISE, is_hole=NUMBER, local_field=FIELD)
-def charge_amplitude(*, typed: Array, own_relative: Array, frequency: Array, gradient: Array, g: Array, displacement: Array,
-                     charge_noise: Array, material_relative: Array, is_hole: Array, local_field: Array) -> Array:
+@law(
+    FREQUENCY_NOISE,
+    reference="struck2020",
+    place="charge noise through a field gradient",
+    typed=FREQUENCY_NOISE,
+    own_relative=RELATIVE_NOISE,
+    frequency=FREQUENCY,
+    gradient=GRADIENT,
+    g=NUMBER,
+    displacement=DISPLACEMENT,
+    charge_noise=CHARGE_NOISE,
+    material_relative=RELATIVE_NOISE,
+    is_hole=NUMBER,
+    local_field=FIELD,
+)
+def charge_amplitude(
+    *,
+    typed: Array,
+    own_relative: Array,
+    frequency: Array,
+    gradient: Array,
+    g: Array,
+    displacement: Array,
+    charge_noise: Array,
+    material_relative: Array,
+    is_hole: Array,
+    local_field: Array,
+) -> Array:
     """1/f amplitude at 1 Hz: the first of typed, relative to the qubit's frequency, through a gradient, the material's.
 
     An electron without a local field and none of these has none; with a local field and none of these it is unknown (nan).
@@ -87,10 +126,18 @@ def allowed_share(*, source_share: Array, allowed_noise: Array) -> Array:
     return source_share * allowed_noise
 
 
-@law(FREQUENCY_NOISE, amplitude=FREQUENCY_NOISE, typed=FREQUENCY_NOISE, own_relative=RELATIVE_NOISE,
-     material_relative=RELATIVE_NOISE, gradient=GRADIENT, white=WHITE_NOISE)
-def refocused_amplitude(*, amplitude: Array, typed: Array, own_relative: Array, material_relative: Array, gradient: Array,
-                        white: Array) -> Array:
+@law(
+    FREQUENCY_NOISE,
+    amplitude=FREQUENCY_NOISE,
+    typed=FREQUENCY_NOISE,
+    own_relative=RELATIVE_NOISE,
+    material_relative=RELATIVE_NOISE,
+    gradient=GRADIENT,
+    white=WHITE_NOISE,
+)
+def refocused_amplitude(
+    *, amplitude: Array, typed: Array, own_relative: Array, material_relative: Array, gradient: Array, white: Array
+) -> Array:
     """1/f amplitude that refocusing meets; unknown (nan) where nothing says what noise is left beside the static one."""
     stated = (typed, own_relative, material_relative, gradient, white)
     silent = np.all(np.isnan(np.stack(np.broadcast_arrays(*stated))), axis=0)

@@ -14,8 +14,14 @@ from planner.kinds import COUNT, ENERGY_SQUARED, FRACTION, FREQUENCY, NUMBER
 from planner.physics import Array
 
 
-@law(FREQUENCY, reference="merkulov2002", place="Gaussian frozen field", moment=ENERGY_SQUARED, spinful_fraction=FRACTION,
-     nuclei=COUNT)
+@law(
+    FREQUENCY,
+    reference="merkulov2002",
+    place="Gaussian frozen field",
+    moment=ENERGY_SQUARED,
+    spinful_fraction=FRACTION,
+    nuclei=COUNT,
+)
 def bath_noise(*, moment: Array, spinful_fraction: Array, nuclei: Array) -> Array:
     """sigma = sqrt(x M / N) / h, M = sum_j w_j A_j^2 I_j (I_j + 1)/3 over the isotopes: rms of an unprepared dense bath.
 
@@ -24,15 +30,31 @@ def bath_noise(*, moment: Array, spinful_fraction: Array, nuclei: Array) -> Arra
     return np.sqrt(spinful_fraction * moment / nuclei) / PLANCK
 
 
-@law(FREQUENCY, reference="merkulov2002", place="Gaussian frozen field, weighted with the share in the barrier",
-     moment=ENERGY_SQUARED, germanium=FRACTION, spinful=FRACTION, share=FRACTION, nuclei=COUNT)
+@law(
+    FREQUENCY,
+    reference="merkulov2002",
+    place="Gaussian frozen field, weighted with the share in the barrier",
+    moment=ENERGY_SQUARED,
+    germanium=FRACTION,
+    spinful=FRACTION,
+    share=FRACTION,
+    nuclei=COUNT,
+)
 def barrier_bath_noise(*, moment: Array, germanium: Array, spinful: Array, share: Array, nuclei: Array) -> Array:
     """sigma_b = p sqrt(x y M / N_b) / h: germanium (share y of the sites, x of it 73Ge) under the share p of the density."""
     return share * np.sqrt(germanium * spinful * moment / nuclei) / PLANCK
 
 
-@law(FREQUENCY, reference="fischer2008", place="Ising coupling of a heavy hole", model=FREQUENCY, typed=FREQUENCY,
-     tracked=FREQUENCY, axis_share=NUMBER, is_hole=NUMBER)
+@law(
+    FREQUENCY,
+    reference="fischer2008",
+    place="Ising coupling of a heavy hole",
+    model=FREQUENCY,
+    typed=FREQUENCY,
+    tracked=FREQUENCY,
+    axis_share=NUMBER,
+    is_hole=NUMBER,
+)
 def nuclear_noise(*, model: Array, typed: Array, tracked: Array, axis_share: Array, is_hole: Array) -> Array:
     """Slow rms of the well's nuclei: tracked, else typed, else the bath's; for a hole times its share along the heavy axis.
 
@@ -49,7 +71,9 @@ def barrier_noise(*, model: Array, typed: Array) -> Array:
     return np.where(np.isnan(typed), model, 0.0)
 
 
-def few_nuclei(*, nuclei: Array, spinful_fraction: Array, typed: Array, tracked: Array, t2_star: Array) -> NDArray[np.bool_]:
+def few_nuclei(
+    *, nuclei: Array, spinful_fraction: Array, typed: Array, tracked: Array, t2_star: Array
+) -> NDArray[np.bool_]:
     """Where the bath formula is only a bound: fewer than 100 spinful nuclei, and nothing measured in its place.
 
     The limit of 100 is a judgement from published misses of the formula (with 40 nuclei it was 35 times off).

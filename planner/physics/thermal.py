@@ -10,7 +10,9 @@ from planner.kinds import ENERGY, FRACTION, FREQUENCY, NUMBER, TEMPERATURE, TIME
 from planner.physics import Array
 
 
-@law(NUMBER, reference="codata2022", place="Planck and Boltzmann constants", frequency=FREQUENCY, temperature=TEMPERATURE)
+@law(
+    NUMBER, reference="codata2022", place="Planck and Boltzmann constants", frequency=FREQUENCY, temperature=TEMPERATURE
+)
 def thermal_ratio(*, frequency: Array, temperature: Array) -> Array:
     """x = h f / (k T) with the electron temperature."""
     return PLANCK * frequency / (BOLTZMANN * temperature)
@@ -40,7 +42,13 @@ def blockade_need(*, temperature: Array) -> Array:
     return 5 * BOLTZMANN * temperature
 
 
-@law(ENERGY, reference="yang2013", place="relaxation hot spot at equal splittings", energy=ENERGY, valley_splitting=ENERGY)
+@law(
+    ENERGY,
+    reference="yang2013",
+    place="relaxation hot spot at equal splittings",
+    energy=ENERGY,
+    valley_splitting=ENERGY,
+)
 def valley_distance(*, energy: Array, valley_splitting: Array) -> Array:
     """Distance of Zeeman energy and valley splitting."""
     return np.abs(energy - valley_splitting)
@@ -53,4 +61,4 @@ def smallest_in_use(*, valley_splitting: Array, in_use: Array) -> Array:
 
 
 def _fermi(x: Array) -> Array:
-    return 0.5 * (1 - np.tanh(x / 2))  # equal to 1/(1 + e^x), without overflow
+    return np.exp(-np.logaddexp(0, x))  # 1/(1 + e^x) without overflow and with all digits of small shares

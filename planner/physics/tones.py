@@ -57,7 +57,7 @@ def _best_tone(frequency: Array, half_width: float) -> float:
     middle = (lowest + highest) / 2
     if not np.isfinite(middle):
         return float("nan")
-    first, last = np.ceil((highest - half_width - 1) / MHZ), np.floor((lowest + half_width + 1) / MHZ)
+    first, last = max(1.0, np.ceil((highest - half_width - 1) / MHZ)), np.floor((lowest + half_width + 1) / MHZ)
     if last < first:
         return float(middle)
     tones = np.arange(first, last + 1) * MHZ

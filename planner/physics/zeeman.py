@@ -68,7 +68,9 @@ def zeeman_energy(*, frequency: Array) -> Array:
     return PLANCK * frequency
 
 
-@law(FREQUENCY_PER_FIELD, reference="crippa2018", place="longitudinal response", g_tensor=NUMBER, precession_vector=FIELD)
+@law(
+    FREQUENCY_PER_FIELD, reference="crippa2018", place="longitudinal response", g_tensor=NUMBER, precession_vector=FIELD
+)
 def field_response(*, g_tensor: Array, precession_vector: Array) -> Array:
     """(muB/h) u.g, u = v/|v|: the change of frequency per field added along c1, c2, c3."""
     axis = precession_vector / _norm(precession_vector)[..., None]
@@ -99,7 +101,8 @@ def azimuth_slope(*, field_response: Array, field: Array, elevation: Array, azim
 def heavy_axis_share(*, g: Array, g_euler: Array, precession_vector: Array, is_hole: Array) -> Array:
     """Share (0 to 1) of the quantisation axis along the principal axis of the largest |g|.
 
-    With three equal values that axis is c3 for an electron; for a hole it is not known and the result is nan.
+    With three equal values that axis is c3 for an electron. For a hole whose largest value is not the only one of its size
+    the axis is not known and the result is nan.
     """
     axes = np.swapaxes(principal_axes(g_euler), -1, -2)
     heaviest = np.eye(3)[np.argmax(np.abs(g), axis=-1)]
@@ -107,7 +110,8 @@ def heavy_axis_share(*, g: Array, g_euler: Array, precession_vector: Array, is_h
     scalar = np.ptp(np.abs(g), axis=-1) == 0
     heavy = np.where(scalar[..., None], np.array([0.0, 0.0, 1.0]), heavy)
     share = np.abs(_dot(precession_vector, heavy)) / _norm(precession_vector)
-    return np.where(scalar & (is_hole > 0), np.nan, np.minimum(share, 1.0))
+    shared = (np.abs(g) == np.abs(g).max(axis=-1, keepdims=True)).sum(axis=-1) > 1
+    return np.where(shared & (is_hole > 0), np.nan, np.minimum(share, 1.0))
 
 
 @law(FREQUENCY, frequency=FREQUENCY, in_use=NUMBER)
@@ -125,10 +129,26 @@ def vector_uncertainty(*, field_response: Array, uncertainty: Array) -> Array:
     return _norm(field_response * uncertainty)
 
 
-@law(FREQUENCY, reference="jcgm100", place="5.1.2", g=NUMBER, g_uncertainty=NUMBER, g_euler=ANGLE, euler_uncertainty=ANGLE,
-     field_at_dot=FIELD, precession_vector=FIELD)
-def tensor_uncertainty(*, g: Array, g_uncertainty: Array, g_euler: Array, euler_uncertainty: Array, field_at_dot: Array,
-                       precession_vector: Array) -> Array:
+@law(
+    FREQUENCY,
+    reference="jcgm100",
+    place="5.1.2",
+    g=NUMBER,
+    g_uncertainty=NUMBER,
+    g_euler=ANGLE,
+    euler_uncertainty=ANGLE,
+    field_at_dot=FIELD,
+    precession_vector=FIELD,
+)
+def tensor_uncertainty(
+    *,
+    g: Array,
+    g_uncertainty: Array,
+    g_euler: Array,
+    euler_uncertainty: Array,
+    field_at_dot: Array,
+    precession_vector: Array,
+) -> Array:
     """Uncertainty of f from those of the principal values and of the ZYZ angles, to first order."""
     axes = principal_axes(g_euler)
     unit = precession_vector / _norm(precession_vector)[..., None]
@@ -144,15 +164,41 @@ def tensor_uncertainty(*, g: Array, g_uncertainty: Array, g_euler: Array, euler_
     return BOHR_MAGNETON_HZ * np.hypot(values, angles)
 
 
-@law(FREQUENCY, reference="jcgm100", place="5.1.2", remanence=FREQUENCY, local=FREQUENCY, tensor=FREQUENCY,
-     field_slope=FREQUENCY_PER_FIELD, field_uncertainty=FIELD, elevation_slope=FREQUENCY_PER_ANGLE,
-     elevation_uncertainty=ANGLE, azimuth_slope=FREQUENCY_PER_ANGLE, azimuth_uncertainty=ANGLE)
-def search_window(*, remanence: Array, local: Array, tensor: Array, field_slope: Array, field_uncertainty: Array,
-                  elevation_slope: Array, elevation_uncertainty: Array, azimuth_slope: Array,
-                  azimuth_uncertainty: Array) -> Array:
+@law(
+    FREQUENCY,
+    reference="jcgm100",
+    place="5.1.2",
+    remanence=FREQUENCY,
+    local=FREQUENCY,
+    tensor=FREQUENCY,
+    field_slope=FREQUENCY_PER_FIELD,
+    field_uncertainty=FIELD,
+    elevation_slope=FREQUENCY_PER_ANGLE,
+    elevation_uncertainty=ANGLE,
+    azimuth_slope=FREQUENCY_PER_ANGLE,
+    azimuth_uncertainty=ANGLE,
+)
+def search_window(
+    *,
+    remanence: Array,
+    local: Array,
+    tensor: Array,
+    field_slope: Array,
+    field_uncertainty: Array,
+    elevation_slope: Array,
+    elevation_uncertainty: Array,
+    azimuth_slope: Array,
+    azimuth_uncertainty: Array,
+) -> Array:
     """Standard uncertainty of where the line will be found: the root-sum-square of all contributions."""
-    return np.sqrt(remanence**2 + local**2 + tensor**2 + (field_slope * field_uncertainty)**2
-                   + (elevation_slope * elevation_uncertainty)**2 + (azimuth_slope * azimuth_uncertainty)**2)
+    return np.sqrt(
+        remanence**2
+        + local**2
+        + tensor**2
+        + (field_slope * field_uncertainty) ** 2
+        + (elevation_slope * elevation_uncertainty) ** 2
+        + (azimuth_slope * azimuth_uncertainty) ** 2
+    )
 
 
 def principal_axes(g_euler: Array) -> Array:
@@ -171,8 +217,14 @@ def _rotation_axes(g_euler: Array) -> Array:
     """The axes about which a, b and c turn the tensor, as columns: z, Rz(a) y, R z."""
     a, b = g_euler[..., 0], g_euler[..., 1]
     zero, one = 0 * a, 0 * a + 1
-    return np.stack((_stack(zero, zero, one), _stack(-np.sin(a), np.cos(a), zero),
-                     _stack(np.cos(a) * np.sin(b), np.sin(a) * np.sin(b), np.cos(b))), axis=-1)
+    return np.stack(
+        (
+            _stack(zero, zero, one),
+            _stack(-np.sin(a), np.cos(a), zero),
+            _stack(np.cos(a) * np.sin(b), np.sin(a) * np.sin(b), np.cos(b)),
+        ),
+        axis=-1,
+    )
 
 
 def _nearest_other(frequency: Array, ranked: Array, in_use: Array) -> Array:

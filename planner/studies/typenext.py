@@ -25,8 +25,11 @@ def type_next(evaluation: Evaluation) -> TypeNext | None:
     singles = [(key, evaluate(_with_example(evaluation.plan, key))) for key in _missing(evaluation)]
     found = [TypeNext(key, "", before - _unknown(after)) for key, after in singles]
     if not any(entry.known for entry in found):
-        found = [TypeNext(key, also, before - _unknown(evaluate(_with_example(after.plan, also))))
-                 for key, after in singles for also in _missing(after)]
+        found = [
+            TypeNext(key, also, before - _unknown(evaluate(_with_example(after.plan, also))))
+            for key, after in singles
+            for also in _missing(after)
+        ]
     best = max(found, key=lambda entry: entry.known, default=None)
     return best if best is not None and best.known > 0 else None
 
@@ -53,4 +56,3 @@ def _with_example(plan: Plan, key: str) -> Plan:
     given = address.given
     assert given.form is Form.QUANTITY
     return replaced(plan, address, read_value(given, given.example))
-

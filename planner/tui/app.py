@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from typing import ClassVar
 
 from textual import events, work
 from textual.app import App, ComposeResult
-from textual.binding import Binding
+from textual.binding import Binding, BindingType
 from textual.containers import Horizontal
 from textual.widgets import Static
 
@@ -35,8 +36,11 @@ class Planner(App[None], inherit_bindings=False):
 
     CSS_PATH = "planner.tcss"
     ENABLE_COMMAND_PALETTE = False
-    BINDINGS = [Binding(action.control, f"do('{action.method}')", show=False, priority=True)
-                for action in ACTIONS if action.control]
+    BINDINGS: ClassVar[list[BindingType]] = [
+        Binding(action.control, f"do('{action.method}')", show=False, priority=True)
+        for action in ACTIONS
+        if action.control
+    ]
 
     def __init__(self, document: Document) -> None:
         super().__init__(driver_class=terminal.driver_class(), ansi_color=True)
@@ -137,8 +141,11 @@ class Planner(App[None], inherit_bindings=False):
     # -- keys and what comes of them
 
     def on_key(self, event: events.Key) -> None:
-        """Keys that no grid takes: Space opens the actions, Tab goes on."""
-        if event.key == "space":
+        """Keys that no grid takes: Space opens the actions, Tab goes on. A key while nothing has the keyboard is not lost."""
+        if self.focused is None:
+            self.grid.focus(scroll_visible=False)
+            self.grid.post_message(events.Key(event.key, event.character))
+        elif event.key == "space":
             self.foot.choose(self.action_do)
         elif event.key in {"tab", "shift+tab"}:
             self.go_on(1 if event.key == "tab" else -1)
@@ -195,11 +202,16 @@ class Planner(App[None], inherit_bindings=False):
     def action_do(self, method: str) -> None:
         """Do one action of the table."""
         actions: dict[str, Callable[[], object]] = {
-            "undo": lambda: self.take(sessions.undone(self.session)), "save": lambda: files.save(self),
-            "redo": lambda: self.take(sessions.redone(self.session)), "save_as": lambda: files.save_as(self),
-            "add_qubit": lambda: qubits.add(self), "drop_qubit": lambda: qubits.drop(self),
-            "margins": lambda: self.visit("margins"), "leave": lambda: files.leave(self),
-            "help": lambda: self.push_screen(Help())}
+            "undo": lambda: self.take(sessions.undone(self.session)),
+            "save": lambda: files.save(self),
+            "redo": lambda: self.take(sessions.redone(self.session)),
+            "save_as": lambda: files.save_as(self),
+            "add_qubit": lambda: qubits.add(self),
+            "drop_qubit": lambda: qubits.drop(self),
+            "margins": lambda: self.visit("margins"),
+            "leave": lambda: files.leave(self),
+            "help": lambda: self.push_screen(Help()),
+        }
         actions[method]()
 
 

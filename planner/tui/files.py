@@ -19,8 +19,11 @@ def save(app: Planner, then: Callable[[], None] = lambda: None) -> None:
     """Save under the present name; asks first where comments would be lost. `then` follows when it is saved."""
     _, in_house_form = text_of(app.session.document, app.session.plan)
     if in_house_form:
-        app.foot.ask("This file can't be changed line by line: writing it anew loses its comments.", "w write it anew",
-                     {"w": lambda: write(app, app.session.path, then)})
+        app.foot.ask(
+            "This file can't be changed line by line: writing it anew loses its comments.",
+            "w write it anew",
+            {"w": lambda: write(app, app.session.path, then)},
+        )
     else:
         write(app, app.session.path, then)
 
@@ -35,8 +38,11 @@ def leave(app: Planner) -> None:
     if app.session.saved:
         app.exit()
     else:
-        app.foot.ask("The plan is not saved.", "s save and leave  d drop the edits and leave",
-                     {"s": lambda: save(app, app.exit), "d": app.exit})
+        app.foot.ask(
+            "The plan is not saved.",
+            "s save and leave  d drop the edits and leave",
+            {"s": lambda: save(app, app.exit), "d": app.exit},
+        )
 
 
 def write(app: Planner, path: Path, then: Callable[[], None], *, overwrite: bool = False) -> None:
@@ -44,8 +50,11 @@ def write(app: Planner, path: Path, then: Callable[[], None], *, overwrite: bool
     try:
         app.take(sessions.saved(app.session, path, overwrite=overwrite))
     except ChangedOnDisk as trouble:
-        app.foot.ask(f"{trouble}: someone else may have written it.", "f save under another name  o overwrite it",
-                     {"f": lambda: save_as(app, then), "o": lambda: write(app, path, then, overwrite=True)})
+        app.foot.ask(
+            f"{trouble}: someone else may have written it.",
+            "f save under another name  o overwrite it",
+            {"f": lambda: save_as(app, then), "o": lambda: write(app, path, then, overwrite=True)},
+        )
     except (SaveError, ReadError) as trouble:
         app.foot.ask(f"Not saved. {trouble}", "f save under another name", {"f": lambda: save_as(app, then)})
     else:

@@ -107,12 +107,19 @@ class Foot(Static, can_focus=True):
         line = Text(self._line, style="bold" if self._bad else "")
         if self._prompt is not None:
             question, draft, _ = self._prompt
-            line = Text.assemble((f"{question}: ", "bold"), draft.text[:draft.at],
-                                 (draft.text[draft.at:draft.at + 1] or " ", "reverse"), draft.text[draft.at + 1:])
+            line = Text.assemble(
+                (f"{question}: ", "bold"),
+                draft.text[: draft.at],
+                (draft.text[draft.at : draft.at + 1] or " ", "reverse"),
+                draft.text[draft.at + 1 :],
+            )
             self.update(Text("\n").join([line, Text("Enter accept  Esc give up")]), layout=False)
             return
-        folded = line.wrap(self.app.console, width)[:self.size.height - 1 or 1]
-        self.update(Text("\n").join([*folded, *[Text("")] * (self.size.height - 1 - len(folded)), Text(self._keys)]), layout=False)
+        folded = line.wrap(self.app.console, width)[: self.size.height - 1 or 1]
+        self.update(
+            Text("\n").join([*folded, *[Text("")] * (self.size.height - 1 - len(folded)), Text(self._keys)]),
+            layout=False,
+        )
 
     def on_resize(self) -> None:
         """Another width, another cut."""

@@ -14,8 +14,11 @@ if TYPE_CHECKING:
 def add(app: Planner) -> None:
     """Ask for a name and add a qubit below the one under the cursor, as its copy."""
     row, plan = app.qubits.cursor_row, app.session.plan
-    app.foot.prompt(f"name of the new qubit, a copy of {plan.qubit[row].name}", sessions.free_name(plan),
-                    lambda name: _added(app, name, row))
+    app.foot.prompt(
+        f"name of the new qubit, a copy of {plan.qubit[row].name}",
+        sessions.free_name(plan),
+        lambda name: _added(app, name, row),
+    )
 
 
 def _added(app: Planner, name: str, row: int) -> None:

@@ -35,7 +35,13 @@ def help_at(evaluation: Evaluation, key: str) -> str:
     if name.startswith("margin."):
         margin = evaluation.margin(name.removeprefix("margin."))
         limit = next((limit for limit in graph().limits if f"margin.{limit.name}" == name), None)
-        return f"{margin_line(evaluation, margin)}. {sentence(margin.limit.meaning)}" if margin and not row else limit.meaning if limit else ""
+        return (
+            f"{margin_line(evaluation, margin)}. {sentence(margin.limit.meaning)}"
+            if margin and not row
+            else limit.meaning
+            if limit
+            else ""
+        )
     derived = next((derived for derived in evaluation.graph.order if derived.key == name), None)
     if derived is None:
         return ""

@@ -19,8 +19,11 @@ def head_lines(evaluation: Evaluation, following: TypeNext | None, state: str, w
     room = max(2, (width - len(state) - sum(map(len, parts))) // len(parts))
     first = (" " * min(room, 6)).join(parts)
     left = max(0, width - len(state) - 2) if state else width  # however long the names: the state stays in view
-    return [f"{first[:left]:<{left}}{'  ' if state else ''}{state}".rstrip(), counts(evaluation),
-            headline(evaluation, following)]
+    return [
+        f"{first[:left]:<{left}}{'  ' if state else ''}{state}".rstrip(),
+        counts(evaluation),
+        headline(evaluation, following),
+    ]
 
 
 def too_small(columns: int, lines: int) -> str:
@@ -34,19 +37,29 @@ def first_screen(evaluation: Evaluation, following: TypeNext | None, width: int 
     """Head, qubits with their first results, and the margins."""
     qubits = qubit_table(evaluation)
     narrow = Table(qubits.columns[:FIRST_COLUMNS], tuple(row[:FIRST_COLUMNS] for row in qubits.rows))
-    lines = [*head_lines(evaluation, following, "", width), "", *text_lines(narrow), "",
-             *text_lines(margin_table(evaluation, width))]
+    lines = [
+        *head_lines(evaluation, following, "", width),
+        "",
+        *text_lines(narrow),
+        "",
+        *text_lines(margin_table(evaluation, width)),
+    ]
     return [line[:width].rstrip() for line in lines]
 
 
 def text_lines(table: Table) -> list[str]:
     """A table as plain lines, headings first, columns two blanks apart."""
     height = max((len(column.heading) for column in table.columns), default=0)
-    heads = [[column.heading[line] if line < len(column.heading) else "" for column in table.columns] for line in range(height)]
+    heads = [
+        [column.heading[line] if line < len(column.heading) else "" for column in table.columns]
+        for line in range(height)
+    ]
     return [_line(table, texts) for texts in heads] + [_line(table, [cell.text for cell in row]) for row in table.rows]
 
 
 def _line(table: Table, texts: list[str]) -> str:
-    padded = (f"{text:>{column.width}}" if column.right else f"{text:<{column.width}}"
-              for text, column in zip(texts, table.columns, strict=True))
+    padded = (
+        f"{text:>{column.width}}" if column.right else f"{text:<{column.width}}"
+        for text, column in zip(texts, table.columns, strict=True)
+    )
     return "  ".join(padded).rstrip()

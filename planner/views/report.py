@@ -29,7 +29,8 @@ QUBITS_BESIDE = 6
 
 def plan_hash(evaluation: Evaluation) -> str:
     """First 16 hex digits of SHA-256 over the sorted lines `key=repr(SI value, tolerance)` of all resolved givens and the
-    edition; defaults found from results are left out."""
+    edition; defaults found from results are left out.
+    """
     lines = [f"{key}={_numbers(entry.value)!r}" for key, entry in resolve_all(evaluation.plan).items()]
     text = "\n".join([*sorted(lines), f"edition={edition()!r}"])
     return hashlib.sha256(text.encode()).hexdigest()[:16]
@@ -46,33 +47,57 @@ def check_lines(evaluation: Evaluation, name: str) -> list[str]:
 
 def report_text(evaluation: Evaluation, following: TypeNext | None, name: str) -> list[str]:
     """The whole plan's results as text, one result a line."""
-    lines = [f"plan {name}", f"hash {plan_hash(evaluation)}, edition {edition()}", "",
-             *head_lines(evaluation, following, "", WIDTH), "", "margins", *check_lines(evaluation, name)[1:]]
+    lines = [
+        f"plan {name}",
+        f"hash {plan_hash(evaluation)}, edition {edition()}",
+        "",
+        *head_lines(evaluation, following, "", WIDTH),
+        "",
+        "margins",
+        *check_lines(evaluation, name)[1:],
+    ]
     for start in range(0, len(evaluation.names), QUBITS_BESIDE):
-        lines += ["", *text_lines(_results(evaluation, range(start, min(start + QUBITS_BESIDE, len(evaluation.names)))))]
+        lines += [
+            "",
+            *text_lines(_results(evaluation, range(start, min(start + QUBITS_BESIDE, len(evaluation.names))))),
+        ]
     return [line.rstrip() for line in lines]
 
 
 def report_json(evaluation: Evaluation, name: str) -> str:
     """Everything in full precision, for scripts: givens, results, margins; null where unknown, with the reason."""
     document = {
-        "planner": __version__, "format": FORMAT, "edition": edition(), "hash": plan_hash(evaluation), "plan": name,
-        "givens": _givens(evaluation), "results": _results_json(evaluation),
+        "planner": __version__,
+        "format": FORMAT,
+        "edition": edition(),
+        "hash": plan_hash(evaluation),
+        "plan": name,
+        "givens": _givens(evaluation),
+        "results": _results_json(evaluation),
         "margins": [_margin(evaluation, margin) for margin in evaluation.ranked],
-        "not_asked": dict(evaluation.not_asked), "verdict": evaluation.verdict,
+        "not_asked": dict(evaluation.not_asked),
+        "verdict": evaluation.verdict,
     }
     return json.dumps(document, indent=1, ensure_ascii=False, allow_nan=False)
 
 
 def _results(evaluation: Evaluation, rows: range) -> Table:
-    shown = [derived for derived in evaluation.graph.order
-             if derived.shown and derived.per is Per.QUBIT and derived.key not in givens()]
+    shown = [
+        derived
+        for derived in evaluation.graph.order
+        if derived.shown and derived.per is Per.QUBIT and derived.key not in givens()
+    ]
     shown.sort(key=lambda derived: derived.key)
     width = max(len(derived.key) for derived in shown)
-    columns = (Column(("result",), width), Column(("unit",), 8),
-               *(Column((evaluation.names[row],), max(8, len(evaluation.names[row])), right=True) for row in rows))
-    lines = tuple((Cell(derived.key), Cell(derived.display),
-                   *(Cell(result_text(evaluation, derived.key, row)) for row in rows)) for derived in shown)
+    columns = (
+        Column(("result",), width),
+        Column(("unit",), 8),
+        *(Column((evaluation.names[row],), max(8, len(evaluation.names[row])), right=True) for row in rows),
+    )
+    lines = tuple(
+        (Cell(derived.key), Cell(derived.display), *(Cell(result_text(evaluation, derived.key, row)) for row in rows))
+        for derived in shown
+    )
     return Table(columns, lines)
 
 
@@ -85,25 +110,49 @@ def _givens(evaluation: Evaluation) -> dict[str, Any]:
     for key, entry in resolve_all(evaluation.plan).items():
         kind = address_of(evaluation.plan, key).given.kind
         if isinstance(entry.value, Quantity) and kind is not None:
-            found[key] = {"text": entry.value.text, "value": entry.value.value, "tolerance": entry.value.tolerance,
-                          "unit": kind.si, "origin": entry.value.origin, "from": entry.source}
+            found[key] = {
+                "text": entry.value.text,
+                "value": entry.value.value,
+                "tolerance": entry.value.tolerance,
+                "unit": kind.si,
+                "origin": entry.value.origin,
+                "from": entry.source,
+            }
         else:
-            found[key] = {"text": entry.value, "value": entry.value, "tolerance": None, "unit": "", "origin": "",
-                          "from": entry.source}
-    return found | {key: _found(evaluation, key) for key, given in givens().items()
-                    if given.missing is Missing.FOUND and key not in found}
+            found[key] = {
+                "text": entry.value,
+                "value": entry.value,
+                "tolerance": None,
+                "unit": "",
+                "origin": "",
+                "from": entry.source,
+            }
+    return found | {
+        key: _found(evaluation, key)
+        for key, given in givens().items()
+        if given.missing is Missing.FOUND and key not in found
+    }
 
 
 def _found(evaluation: Evaluation, key: str) -> dict[str, Any]:
     """A default that was found from results: one value of the plan, or one a qubit."""
     kind = evaluation.derived(key).kind
-    return {"text": None, "tolerance": None, "unit": kind.si, "origin": "", "from": "default", **_values(evaluation, key)}
+    return {
+        "text": None,
+        "tolerance": None,
+        "unit": kind.si,
+        "origin": "",
+        "from": "default",
+        **_values(evaluation, key),
+    }
 
 
 def _results_json(evaluation: Evaluation) -> dict[str, Any]:
-    return {derived.key: {"unit": derived.kind.si, **_values(evaluation, derived.key)}
-            for derived in sorted(evaluation.graph.order, key=lambda derived: derived.key)
-            if derived.shown and derived.key not in givens()}
+    return {
+        derived.key: {"unit": derived.kind.si, **_values(evaluation, derived.key)}
+        for derived in sorted(evaluation.graph.order, key=lambda derived: derived.key)
+        if derived.shown and derived.key not in givens()
+    }
 
 
 def _values(evaluation: Evaluation, key: str) -> dict[str, Any]:
@@ -117,6 +166,16 @@ def _values(evaluation: Evaluation, key: str) -> dict[str, Any]:
 
 
 def _margin(evaluation: Evaluation, margin: Margin) -> dict[str, Any]:
-    return {"name": margin.name, "worst": margin.row or None, "allowed": margin.allowed, "expected": margin.expected,
-            "unit": margin.compare.kind.si, "margin": margin.value, "low": None, "high": None, "verdict": margin.verdict,
-            "until": until_word(margin) if margin.until is not None else None, "why": gap(evaluation, margin)}
+    return {
+        "name": margin.name,
+        "worst": margin.row or None,
+        "allowed": margin.allowed,
+        "expected": margin.expected,
+        "unit": margin.compare.kind.si,
+        "margin": margin.value,
+        "low": None,
+        "high": None,
+        "verdict": margin.verdict,
+        "until": until_word(margin) if margin.until is not None else None,
+        "why": gap(evaluation, margin),
+    }

@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from math import isfinite
 
 from planner.declare import Derived, Missing, Per
 from planner.evaluate import Evaluation
 from planner.graph import givens
 from planner.kinds import Quantity, clean
-from planner.margins import CLEAR, SHORT, TIGHT, UNKNOWN, VERDICTS
+from planner.margins import CLEAR, SHORT, TIGHT, UNKNOWN, VERDICTS, number_or_none
 from planner.plan import Address, Plan, key_of, resolved, table_givens, unit_shown
 from planner.views.numbers import margin_text, with_unit, without_origin
 from planner.views.rows import gap, result_text, until_word
@@ -33,19 +34,26 @@ def qubit_table(evaluation: Evaluation) -> Table:
     first = [evaluation.derived(key) for key in FIRST_RESULTS]
     others = [derived for derived in evaluation.graph.order if _listed(derived) and derived.key not in FIRST_RESULTS]
     fields = [name for name in table_givens("qubit") if name != "name"]
-    columns = (Column(("", ""), _name_width(plan)), *map(_result_column, first), Column(("worst of this qubit", ""), 21),
-               *(_given_column(plan, name) for name in fields), *map(_result_column, others))
+    columns = (
+        Column(("", ""), _name_width(plan)),
+        *map(_result_column, first),
+        Column(("worst of this qubit", ""), 21),
+        *(_given_column(plan, name) for name in fields),
+        *map(_result_column, others),
+    )
     worst = _worst_by_row(evaluation)
     rows = []
     for index in range(len(plan.qubit)):
         row = evaluation.rows.index(index) if index in evaluation.rows else None
-        rows.append((
-            _given_cell(plan, Address("qubit", index, "name")),
-            *(_result_cell(evaluation, derived, row) for derived in first),
-            worst.get(row, Cell("spare" if row is not None else "dead", Tone.FAINT)),
-            *(_given_cell(plan, Address("qubit", index, name)) for name in fields),
-            *(_result_cell(evaluation, derived, row) for derived in others),
-        ))
+        rows.append(
+            (
+                _given_cell(plan, Address("qubit", index, "name")),
+                *(_result_cell(evaluation, derived, row) for derived in first),
+                worst.get(row, Cell("spare" if row is not None else "dead", Tone.FAINT)),
+                *(_given_cell(plan, Address("qubit", index, name)) for name in fields),
+                *(_result_cell(evaluation, derived, row) for derived in others),
+            )
+        )
     return Table(columns, tuple(rows), fixed=1)
 
 
@@ -55,10 +63,14 @@ def pane_table(evaluation: Evaluation, pane: str, width: int) -> Table:
         return margin_table(evaluation, width)
     names = list(table_givens(pane))
     height = -(-len(names) // 2) if width >= TWO_BESIDE else len(names)
-    halves = [[_given_cells(evaluation, Address(pane, None, name)) for name in names[start:start + height]]
-              for start in range(0, len(names), height)]
+    halves = [
+        [_given_cells(evaluation, Address(pane, None, name)) for name in names[start : start + height]]
+        for start in range(0, len(names), height)
+    ]
     blank = (Cell(""),) * 3
-    rows = tuple(tuple(cell for half in halves for cell in (half[row] if row < len(half) else blank)) for row in range(height))
+    rows = tuple(
+        tuple(cell for half in halves for cell in (half[row] if row < len(half) else blank)) for row in range(height)
+    )
     return Table(tuple(_half_columns(halves, width)), rows)
 
 
@@ -78,17 +90,36 @@ def margin_table(evaluation: Evaluation, width: int) -> Table:
     name = max(len(limit.name) for limit in evaluation.graph.limits)
     row_width = max([len(qubit) for qubit in evaluation.names if len(qubit) < 12] or [4])
     text = max(10, width - name - row_width - 7 - 8 - 8 - 6)
-    columns = (Column(("margin",), name), Column(("of",), row_width), Column(("",), 7, right=True), Column(("",), 8),
-               Column(("until",), 8), Column(("",), text))
+    columns = (
+        Column(("margin",), name),
+        Column(("of",), row_width),
+        Column(("",), 7, right=True),
+        Column(("",), 8),
+        Column(("until",), 8),
+        Column(("",), text),
+    )
     rows = [
-        (Cell(margin.name, key=f"margin.{margin.name}"), Cell(margin.row, key=f"margin.{margin.name}"),
-         Cell(margin_text(margin.value), key=f"margin.{margin.name}"),
-         Cell(margin.verdict, VERDICT_TONES[margin.code], key=f"margin.{margin.name}"),
-         Cell(until_word(margin), Tone.FAINT), Cell(gap(evaluation, margin)))
+        (
+            Cell(margin.name, key=f"margin.{margin.name}"),
+            Cell(margin.row, key=f"margin.{margin.name}"),
+            Cell(margin_text(margin.value), key=f"margin.{margin.name}"),
+            Cell(margin.verdict, VERDICT_TONES[margin.code], key=f"margin.{margin.name}"),
+            Cell(until_word(margin), Tone.FAINT),
+            Cell(gap(evaluation, margin)),
+        )
         for margin in evaluation.ranked
     ]
-    rows += [(Cell(margin, Tone.FAINT, key=f"margin.{margin}"), Cell(""), Cell(""), Cell(""), Cell(""),
-              Cell(f"not asked: {reason}", Tone.FAINT)) for margin, reason in evaluation.not_asked.items()]
+    rows += [
+        (
+            Cell(margin, Tone.FAINT, key=f"margin.{margin}"),
+            Cell(""),
+            Cell(""),
+            Cell(""),
+            Cell(""),
+            Cell(f"not asked: {reason}", Tone.FAINT),
+        )
+        for margin, reason in evaluation.not_asked.items()
+    ]
     return Table(columns, tuple(rows))
 
 
@@ -106,8 +137,12 @@ def found_text(evaluation: Evaluation, address: Address) -> str:
     if key not in evaluation.columns or givens()[key].missing is not Missing.FOUND:
         return ""
     derived = evaluation.derived(key)
-    values = [float(value) for value in evaluation.columns[key].base() if value == value]
-    ends = [with_unit(derived.kind, value, derived.display, derived.digits) for value in (min(values), max(values))] if values else []
+    values = [float(value) for value in evaluation.columns[key].base() if isfinite(value)]
+    ends = (
+        [with_unit(derived.kind, value, derived.display, derived.digits) for value in (min(values), max(values))]
+        if values
+        else []
+    )
     return " to ".join(dict.fromkeys(ends))
 
 
@@ -121,7 +156,9 @@ def _name_width(plan: Plan) -> int:
 
 def _result_column(derived: Derived) -> Column:
     heading = derived.heading or derived.key.rpartition(".")[2]
-    return Column((heading, derived.display), max(len(heading), len(derived.display), 8 if derived.display else 9), right=True)
+    return Column(
+        (heading, derived.display), max(len(heading), len(derived.display), 8 if derived.display else 9), right=True
+    )
 
 
 def _given_column(plan: Plan, name: str) -> Column:
@@ -141,11 +178,16 @@ def _worst_by_row(evaluation: Evaluation) -> dict[int | None, Cell]:
     """The worst margin of each qubit in use."""
     found: dict[int | None, Cell] = {}
     for position, row in enumerate(evaluation.used):
-        ranked = [(int(margin.codes[position]), float(margin.margins[position]), margin.name)
-                  for margin in evaluation.margins if margin.limit.per is Per.QUBIT]
-        code, value, name = min(ranked, key=lambda entry: (entry[0], entry[1] if entry[1] == entry[1] else 0.0))
-        number = margin_text(value if value == value else None)
-        found[row] = Cell(f"{name} {number} {VERDICTS[code]}", VERDICT_TONES[code], key=f"margin.{name}@{evaluation.names[row]}")
+        ranked = [
+            (int(margin.codes[position]), float(margin.margins[position]), margin.name)
+            for margin in evaluation.margins
+            if margin.limit.per is Per.QUBIT
+        ]
+        code, value, name = min(ranked, key=lambda entry: (entry[0], entry[1] if isfinite(entry[1]) else 0.0))
+        number = margin_text(number_or_none(value))
+        found[row] = Cell(
+            f"{name} {number} {VERDICTS[code]}", VERDICT_TONES[code], key=f"margin.{name}@{evaluation.names[row]}"
+        )
     return found
 
 
@@ -177,4 +219,3 @@ def _given_cell(plan: Plan, address: Address) -> Cell:
         tone = Tone.GUESS
     edit = (value.text if isinstance(value, Quantity) else value) if typed and value is not None else " "
     return Cell(clean(given_text(plan, address)), tone, key_of(plan, address), editable=True, edit=clean(edit))
-

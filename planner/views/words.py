@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 from planner.declare import OWN, Form, Given, Missing, law_of
-from planner.graph import graph, givens
+from planner.graph import givens, graph
 from planner.plan import ROWS, SECTIONS, table_givens
-from planner.values import bounds_text
 from planner.references import references
+from planner.values import bounds_text
 
 LATER = "no result uses it yet"
 
@@ -16,7 +16,9 @@ def dictionary() -> list[str]:
     lines = ["GIVENS", ""]
     for table in (*SECTIONS, *ROWS):
         if table != "all_qubits":
-            lines += [line for name, given in table_givens(table).items() for line in given_entry(_key(table, name), given)]
+            lines += [
+                line for name, given in table_givens(table).items() for line in given_entry(_key(table, name), given)
+            ]
     lines += ["", "RESULTS", ""]
     for derived in sorted(graph().order, key=lambda derived: derived.key):
         if derived.shown and derived.key not in givens():
@@ -33,8 +35,13 @@ def given_entry(key: str, given: Given) -> list[str]:
     """Two lines on a given: its key, kind, nature and lock; what it is, what is accepted and what its absence means."""
     locks = f", locks at {given.locks.word}" if given.locks is not None else ""
     first = f"{key}  ({kind_text(given)}; {given.nature.value}{locks})"
-    parts = [given.help, bounds_of(given), f"usual: {given.sensible}" if given.sensible else "", missing_text(given),
-             LATER if given.later else ""]
+    parts = [
+        given.help,
+        bounds_of(given),
+        f"usual: {given.sensible}" if given.sensible else "",
+        missing_text(given),
+        LATER if given.later else "",
+    ]
     return [first, "    " + "; ".join(part for part in parts if part)]
 
 
@@ -62,9 +69,14 @@ def bounds_of(given: Given) -> str:
 
 def missing_text(given: Given) -> str:
     """What its absence means."""
-    return {Missing.REQUIRED: "required", Missing.UNKNOWN: "if missing: results that need it are unknown",
-            Missing.OFF: "if missing: not counted", Missing.DEFAULT: f"if missing: {given.default}",
-            Missing.MATERIAL: "if missing: the material's value", Missing.FOUND: "if missing: found from results"}[given.missing]
+    return {
+        Missing.REQUIRED: "required",
+        Missing.UNKNOWN: "if missing: results that need it are unknown",
+        Missing.OFF: "if missing: not counted",
+        Missing.DEFAULT: f"if missing: {given.default}",
+        Missing.MATERIAL: "if missing: the material's value",
+        Missing.FOUND: "if missing: found from results",
+    }[given.missing]
 
 
 def _key(table: str, name: str) -> str:

@@ -22,9 +22,9 @@ def arrays(count: int) -> dict[str, np.ndarray]:
 
 def evaluation(given: dict[str, np.ndarray]) -> tuple[np.ndarray, ...]:
     """Every result and margin of the demo's evaluation."""
-    one = lambda value: np.array([value])  # noqa: E731
+    one = lambda value: np.array([value])
     count = len(given["amplitude"])
-    rows = lambda value: np.full(count, value)  # noqa: E731
+    rows = lambda value: np.full(count, value)
     nothing, in_use = rows(np.nan), np.ones(count)
     field, elevation, azimuth, interval = one(0.42), one(0.0), one(0.0), one(1200.0)
     g, euler = np.full((count, 3), 2.0), np.zeros((count, 3))
@@ -47,28 +47,65 @@ def evaluation(given: dict[str, np.ndarray]) -> tuple[np.ndarray, ...]:
     spacing = zeeman.spacing(frequency=frequency, in_use=in_use)
     remanence = zeeman.vector_uncertainty(field_response=response, uncertainty=np.array([[2e-3, 5e-4, 5e-4]]))
     local = zeeman.vector_uncertainty(field_response=response, uncertainty=np.zeros((count, 3)))
-    of_tensor = zeeman.tensor_uncertainty(g=g, g_uncertainty=0 * g, g_euler=euler, euler_uncertainty=euler,
-                                          field_at_dot=at_dot, precession_vector=precession)
-    window = zeeman.search_window(remanence=remanence, local=local, tensor=of_tensor, field_slope=slope,
-                                  field_uncertainty=one(0.0), elevation_slope=up, elevation_uncertainty=one(0.0087),
-                                  azimuth_slope=round_about, azimuth_uncertainty=one(0.0))
+    of_tensor = zeeman.tensor_uncertainty(
+        g=g,
+        g_uncertainty=0 * g,
+        g_euler=euler,
+        euler_uncertainty=euler,
+        field_at_dot=at_dot,
+        precession_vector=precession,
+    )
+    window = zeeman.search_window(
+        remanence=remanence,
+        local=local,
+        tensor=of_tensor,
+        field_slope=slope,
+        field_uncertainty=one(0.0),
+        elevation_slope=up,
+        elevation_uncertainty=one(0.0087),
+        azimuth_slope=round_about,
+        azimuth_uncertainty=one(0.0),
+    )
     lo = tones.local_oscillator(frequency=frequency, in_use=in_use, half_width=one(5e8))
 
     lowest = dephasing.lowest_frequency(time=interval)
     bath = nuclei.bath_noise(moment=one(1.186e-49), spinful_fraction=one(8e-4), nuclei=one(4e5))
     nuclear = nuclei.nuclear_noise(model=bath, typed=rows(11e3), tracked=nothing, axis_share=axis, is_hole=one(0.0))
-    under = nuclei.barrier_bath_noise(moment=one(1.5e-48), germanium=one(0.3), spinful=one(0.0775), share=one(0.02),
-                                      nuclei=one(1e5))
+    under = nuclei.barrier_bath_noise(
+        moment=one(1.5e-48), germanium=one(0.3), spinful=one(0.0775), share=one(0.02), nuclei=one(1e5)
+    )
     barrier = nuclei.barrier_noise(model=under, typed=rows(11e3))
     magnet = zeeman.vector_uncertainty(field_response=response, uncertainty=np.full((1, 3), 5e-9))
-    drift = noise.drift_noise(field_slope=slope, field=field, drift=one(8.3e-12), settle_slope=one(3.3e-9),
-                              since_ramp=one(np.nan), interval=interval)
-    charge = noise.charge_amplitude(typed=given["amplitude"], own_relative=nothing, frequency=frequency, gradient=nothing,
-                                    g=effective, displacement=one(6e9), charge_noise=one(1.3e-25),
-                                    material_relative=one(np.nan), is_hole=one(0.0), local_field=given["local"])
+    drift = noise.drift_noise(
+        field_slope=slope,
+        field=field,
+        drift=one(8.3e-12),
+        settle_slope=one(3.3e-9),
+        since_ramp=one(np.nan),
+        interval=interval,
+    )
+    charge = noise.charge_amplitude(
+        typed=given["amplitude"],
+        own_relative=nothing,
+        frequency=frequency,
+        gradient=nothing,
+        g=effective,
+        displacement=one(6e9),
+        charge_noise=one(1.3e-25),
+        material_relative=one(np.nan),
+        is_hole=one(0.0),
+        local_field=given["local"],
+    )
     white = noise.or_zero(density=nothing)
-    t2 = dephasing.t2_star(nuclear=nuclear, barrier=barrier, magnet=magnet, amplitude=charge, density=white, lowest=lowest,
-                           measured=nothing)
+    t2 = dephasing.t2_star(
+        nuclear=nuclear,
+        barrier=barrier,
+        magnet=magnet,
+        amplitude=charge,
+        density=white,
+        lowest=lowest,
+        measured=nothing,
+    )
     calibration = noise.calibration_noise(contrast=one(0.55), wait=one(4e-6), t2_star=t2, shots=shots)
     pulse = gates.pi_pulse(rabi_frequency=rabi)
     sequence = gates.sequence_time(gates=gate_count, gate_time=pulse, idle=idle)
@@ -76,37 +113,90 @@ def evaluation(given: dict[str, np.ndarray]) -> tuple[np.ndarray, ...]:
     flicker = clock.flicker_fm(deviation_1s=one(2e-12), deviation_100s=one(1e-12), white=w)
     run = clock.run_time(sequence_time=sequence, longest_wait=wait, shot_time=shot_time)
     averaging = clock.averaging_time(shots=shots, shot_time=shot_time)
-    change = clock.clock_change(white=w, flicker=flicker, aging=one(1.2e-16), run=run, gap=interval, averaging=averaging)
+    change = clock.clock_change(
+        white=w, flicker=flicker, aging=one(1.2e-16), run=run, gap=interval, averaging=averaging
+    )
     clocked = noise.scaled_tone(frequency=frequency, change=change)
     loose = noise.loose_noise(tone=one(np.nan), drift=one(2e-7))
-    static = dephasing.static_noise(nuclear=nuclear, barrier=barrier, magnet=magnet, measured_t2_star=nothing, drift=drift,
-                                    calibration=calibration, clock=clocked, loose=loose)
+    static = dephasing.static_noise(
+        nuclear=nuclear,
+        barrier=barrier,
+        magnet=magnet,
+        measured_t2_star=nothing,
+        drift=drift,
+        calibration=calibration,
+        clock=clocked,
+        loose=loose,
+    )
     free = dephasing.free_flicker(amplitude=charge, measured_t2_star=nothing)
     free_white = dephasing.free_white(density=white, measured_t2_star=nothing)
     over = gates.noise_time(wait=wait, gate_time=pulse)
     seen = dephasing.flicker_rms(amplitude=charge, lowest=lowest, time=over)
     seen_white = dephasing.white_rms(density=white, time=over)
     total = dephasing.total_noise(static=static, amplitude=free, density=free_white, lowest=lowest, time=over)
-    refocused = noise.refocused_amplitude(amplitude=charge, typed=given["amplitude"], own_relative=nothing,
-                                          material_relative=one(np.nan), gradient=nothing, white=nothing)
+    refocused = noise.refocused_amplitude(
+        amplitude=charge,
+        typed=given["amplitude"],
+        own_relative=nothing,
+        material_relative=one(np.nan),
+        gradient=nothing,
+        white=nothing,
+    )
     echo = dephasing.t2_echo(amplitude=refocused, density=white)
     phase = dephasing.wait_phase(total=total, amplitude=one(np.nan), density=white, wait=wait, pulses=pulses)
     detuning = gates.pulse_detuning(static=static, amplitude=free, lowest=lowest, duration=pulse)
     gate = gates.gate_error(detuning=detuning, rabi_frequency=rabi, density=free_white, duration=pulse)
-    error = gates.error_per_gate(gate_error=gate, static=static, amplitude=free, density=free_white, lowest=lowest,
-                                 gate_time=pulse, idle=idle, t1=rows(0.06))
+    error = gates.error_per_gate(
+        gate_error=gate,
+        static=static,
+        amplitude=free,
+        density=free_white,
+        lowest=lowest,
+        gate_time=pulse,
+        idle=idle,
+        t1=rows(0.06),
+    )
     randomised = gates.gates_randomised(error=error, allowed=allowed)
-    aligned = gates.gates_aligned(static=static, free_amplitude=free, free_density=free_white, amplitude=one(np.nan),
-                                  density=white, lowest=lowest, pulses=pulses, allowed=allowed, gate_time=pulse, idle=idle)
-    whole = gates.sequence_error(error=error, gates=gate_count, aligned=one(0.0), static=static, free_amplitude=free,
-                                 free_density=free_white, amplitude=one(np.nan), density=white, lowest=lowest, pulses=pulses,
-                                 sequence_time=sequence)
-    stands = gates.allowed_noise(rabi_frequency=rabi, idle=idle, wait=wait, pulses=pulses, gates=gate_count,
-                                 allowed_phase=one(0.25), allowed_gate_error=one(1e-3), allowed_sequence_error=allowed)
+    aligned = gates.gates_aligned(
+        static=static,
+        free_amplitude=free,
+        free_density=free_white,
+        amplitude=one(np.nan),
+        density=white,
+        lowest=lowest,
+        pulses=pulses,
+        allowed=allowed,
+        gate_time=pulse,
+        idle=idle,
+    )
+    whole = gates.sequence_error(
+        error=error,
+        gates=gate_count,
+        aligned=one(0.0),
+        static=static,
+        free_amplitude=free,
+        free_density=free_white,
+        amplitude=one(np.nan),
+        density=white,
+        lowest=lowest,
+        pulses=pulses,
+        sequence_time=sequence,
+    )
+    stands = gates.allowed_noise(
+        rabi_frequency=rabi,
+        idle=idle,
+        wait=wait,
+        pulses=pulses,
+        gates=gate_count,
+        allowed_phase=one(0.25),
+        allowed_gate_error=one(1e-3),
+        allowed_sequence_error=allowed,
+    )
     accuracy = clock.required_accuracy(source_share=share, allowed_noise=stands, frequency=frequency)
-    wanted = clock.required_stability(source_share=share, frequency=frequency, sequence_time=sequence,
-                                      allowed_sequence_error=allowed)
-    stable = clock.stability(white=w, sequence_time=sequence)
+    wanted = clock.required_stability(
+        source_share=share, frequency=frequency, sequence_time=sequence, allowed_sequence_error=allowed
+    )
+    stable = clock.stability(white=w, flicker=flicker, sequence_time=sequence)
     ratio = thermal.thermal_ratio(frequency=frequency, temperature=one(0.095))
     excited, tail = thermal.excited_share(ratio=ratio), thermal.tunnelling_error(ratio=ratio)
     blockade = thermal.smallest_in_use(valley_splitting=given["valley"], in_use=in_use)
@@ -114,7 +204,17 @@ def evaluation(given: dict[str, np.ndarray]) -> tuple[np.ndarray, ...]:
     distance = thermal.valley_distance(energy=energy, valley_splitting=given["valley"])
     part = noise.allowed_share(source_share=share, allowed_noise=stands)
     edge = tones.band_distance(frequency=frequency, low=one(1e9), high=one(1.8e10))
-    margins = (edge / tones.band_need(guard=one(5e7), search_window=window), part / drift, part / magnet,
-               part / calibration, accuracy / change, wanted / stable, 0.25 / phase, 1e-3 / error, randomised / gate_count,
-               blockade / need, distance / one(1.28e-24))
+    margins = (
+        edge / tones.band_need(guard=one(5e7), search_window=window),
+        part / drift,
+        part / magnet,
+        part / calibration,
+        accuracy / change,
+        wanted / stable,
+        0.25 / phase,
+        1e-3 / error,
+        randomised / gate_count,
+        blockade / need,
+        distance / one(1.28e-24),
+    )
     return (lo, spacing, excited, tail, echo, aligned, whole, seen, seen_white, *margins)

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-from math import pi
-
 import numpy as np
 import pytest
 import scipy.constants as codata  # type: ignore[import-untyped]
@@ -22,21 +20,14 @@ def value(name: str) -> float:
     ("ours", "name"),
     [
         (constants.PLANCK, "Planck constant"),
-        (constants.REDUCED_PLANCK, "reduced Planck constant"),
         (constants.BOLTZMANN, "Boltzmann constant"),
         (constants.ELEMENTARY_CHARGE, "elementary charge"),
         (constants.BOHR_MAGNETON, "Bohr magneton"),
-        (constants.NUCLEAR_MAGNETON, "nuclear magneton"),
-        (constants.MAGNETIC_CONSTANT, "vacuum mag. permeability"),
         (constants.MICRO_EV * 1e6, "electron volt"),
     ],
 )
 def test_scipy_ships_the_same_codata_values(ours: float, name: str) -> None:
     assert ours == near(value(name), rel=1e-15)
-
-
-def test_the_electron_g_factor_is_kept_as_a_magnitude() -> None:
-    assert value("electron g factor") == -constants.ELECTRON_G
 
 
 def test_bohr_magneton_in_hertz_is_the_printed_one() -> None:
@@ -58,4 +49,3 @@ def test_one_micro_electronvolt_is_242_megahertz() -> None:
 def test_mathematical_constants() -> None:
     assert near(float(np.euler_gamma), rel=1e-15) == constants.EULER_GAMMA
     assert near(float(zeta(3)), rel=1e-15) == constants.APERY
-    assert near(constants.PLANCK / (2 * pi), rel=1e-15) == constants.REDUCED_PLANCK

@@ -30,8 +30,11 @@ def filtered(pulses: int, power: int) -> float:
     period = 4 * pi * pulses
     return float(
         quad(
-            lambda z: toggled(np.asarray(z), pulses) * zeta(power, z / period) / period**power, 1e-6, period,
-            limit=4000, epsrel=1e-9,
+            lambda z: toggled(np.asarray(z), pulses) * zeta(power, z / period) / period**power,
+            1e-6,
+            period,
+            limit=4000,
+            epsrel=1e-9,
         )[0]
     )
 
@@ -171,8 +174,13 @@ def t2_star(*, static: float = 0.0, amplitude: float = 0.0, density: float = 0.0
     parts = static / np.sqrt([2, 3, 6])  # three shares of one variance
     return float(
         dephasing.t2_star(
-            nuclear=row(parts[0]), barrier=row(parts[1]), magnet=row(parts[2]), amplitude=row(amplitude),
-            density=row(density), lowest=row(lowest), measured=NEVER,
+            nuclear=row(parts[0]),
+            barrier=row(parts[1]),
+            magnet=row(parts[2]),
+            amplitude=row(amplitude),
+            density=row(density),
+            lowest=row(lowest),
+            measured=NEVER,
         )[0]
     )
 
@@ -216,8 +224,14 @@ def test_flicker_noise_slower_than_the_record_never_reaches_one() -> None:
 def test_a_measured_t2_star_stands_for_what_it_contains() -> None:
     measured = row(np.nan, 8e-6)
     static = dephasing.static_noise(
-        nuclear=row(3.0), barrier=row(4.0), magnet=row(12.0), measured_t2_star=measured, drift=row(1.0),
-        calibration=row(2.0), clock=row(3.0), loose=row(4.0),
+        nuclear=row(3.0),
+        barrier=row(4.0),
+        magnet=row(12.0),
+        measured_t2_star=measured,
+        drift=row(1.0),
+        calibration=row(2.0),
+        clock=row(3.0),
+        loose=row(4.0),
     )
     assert static == near(np.sqrt([13**2 + 30, (1 / (np.sqrt(2) * pi * 8e-6)) ** 2 + 30]))
     np.testing.assert_array_equal(dephasing.free_flicker(amplitude=row(5.0), measured_t2_star=measured), [5.0, 0.0])

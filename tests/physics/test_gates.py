@@ -292,13 +292,26 @@ def test_axes_of_studies() -> None:
         gates.gates_aligned, **free, **noise, pulses=row(0, 1, 2), allowed=row(0.1), gate_time=time, idle=time
     )
     assert_axes_agree(
-        gates.sequence_error, error=small, gates=row(100), aligned=row(0, 1, 1), **free, **noise, pulses=row(0, 0, 2),
+        gates.sequence_error,
+        error=small,
+        gates=row(100),
+        aligned=row(0, 1, 1),
+        **free,
+        **noise,
+        pulses=row(0, 0, 2),
         sequence_time=time,
     )
     assert_axes_agree(gates.reachable_gates, randomised=some, aligned_gates=time, aligned=row(0, 1, 0))
     assert_axes_agree(
-        gates.allowed_noise, rabi_frequency=some, idle=row(1e-5), wait=row(np.nan, 1e-3, 1e-6), pulses=row(0),
-        gates=row(500), allowed_phase=row(0.25), allowed_gate_error=row(1e-3), allowed_sequence_error=row(0.1),
+        gates.allowed_noise,
+        rabi_frequency=some,
+        idle=row(1e-5),
+        wait=row(np.nan, 1e-3, 1e-6),
+        pulses=row(0),
+        gates=row(500),
+        allowed_phase=row(0.25),
+        allowed_gate_error=row(1e-3),
+        allowed_sequence_error=row(0.1),
     )
     assert_axes_agree(gates.detuned_pulse_error, ratio=small * 30)
 

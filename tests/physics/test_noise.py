@@ -68,7 +68,9 @@ def test_the_best_wait_is_half_of_t2_star_at_a_given_time_and_more_at_given_shot
     for shots, expected in ((lambda wait: 1e-2 / wait, 0.5), (lambda _: 1000.0, np.sqrt(0.5))):
         best = minimize_scalar(
             lambda wait, of=shots: calibration(wait=wait, t2_star=t2_star, shots=of(wait)),
-            bounds=(0.1 * t2_star, 1.5 * t2_star), method="bounded", options={"xatol": 1e-12},
+            bounds=(0.1 * t2_star, 1.5 * t2_star),
+            method="bounded",
+            options={"xatol": 1e-12},
         )
         assert best.x / t2_star == near(expected, rel=1e-5)
 
@@ -164,21 +166,39 @@ def test_published_anchor_of_energy_noise_and_t2_star() -> None:
 def test_axes_of_studies() -> None:
     some, unsure = row(1.0, 2.0, 5.0), row(1.0, np.nan, 5.0)
     assert_axes_agree(
-        noise.drift_noise, field_slope=some, field=row(0.5), drift=row(1e-10), settle_slope=row(1e-9),
-        since_ramp=row(5000.0), interval=row(1800.0),
+        noise.drift_noise,
+        field_slope=some,
+        field=row(0.5),
+        drift=row(1e-10),
+        settle_slope=row(1e-9),
+        since_ramp=row(5000.0),
+        interval=row(1800.0),
     )
     assert_axes_agree(noise.calibration_noise, contrast=row(0.3), wait=some, t2_star=some, shots=row(1000))
     assert_axes_agree(noise.scaled_tone, frequency=some, change=some)
     assert_axes_agree(noise.loose_noise, tone=unsure, drift=row(1e-7))
     assert_axes_agree(noise.field_noise_seen, field_noise=some, measured_t2_star=unsure)
     assert_axes_agree(
-        noise.charge_amplitude, typed=unsure, own_relative=row(np.nan, np.nan, 1), frequency=some,
-        gradient=row(np.nan, 3, 1), g=some, displacement=row(1.0), charge_noise=row(1.0),
-        material_relative=row(np.nan), is_hole=row(0.0), local_field=np.eye(3),
+        noise.charge_amplitude,
+        typed=unsure,
+        own_relative=row(np.nan, np.nan, 1),
+        frequency=some,
+        gradient=row(np.nan, 3, 1),
+        g=some,
+        displacement=row(1.0),
+        charge_noise=row(1.0),
+        material_relative=row(np.nan),
+        is_hole=row(0.0),
+        local_field=np.eye(3),
     )
     assert_axes_agree(noise.allowed_share, source_share=row(0.1), allowed_noise=some)
     assert_axes_agree(
-        noise.refocused_amplitude, amplitude=some, typed=unsure, own_relative=row(np.nan),
-        material_relative=row(np.nan), gradient=unsure, white=row(np.nan, np.nan, 3),
+        noise.refocused_amplitude,
+        amplitude=some,
+        typed=unsure,
+        own_relative=row(np.nan),
+        material_relative=row(np.nan),
+        gradient=unsure,
+        white=row(np.nan, np.nan, 3),
     )
     assert_axes_agree(noise.or_zero, density=unsure)

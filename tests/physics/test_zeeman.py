@@ -10,7 +10,7 @@ import pytest
 import scipy.constants as codata  # type: ignore[import-untyped]
 from scipy.spatial.transform import Rotation  # type: ignore[import-untyped]
 
-from planner.constants import BOHR_MAGNETON_HZ, ELECTRON_G, MICRO_EV
+from planner.constants import BOHR_MAGNETON_HZ, MICRO_EV
 from planner.physics import Array, zeeman
 
 from . import assert_axes_agree, assert_axes_agree_together, near, qutip, row
@@ -61,8 +61,11 @@ def spin(**changes: Any) -> Spin:
 
 def random_spin() -> Spin:
     return Spin(
-        g=RANDOM.uniform(-3, 12, 3), g_euler=RANDOM.uniform(-3, 3, 3), field=float(RANDOM.uniform(0.01, 1)),
-        elevation=float(RANDOM.uniform(-1.5, 1.5)), azimuth=float(RANDOM.uniform(-3, 3)),
+        g=RANDOM.uniform(-3, 12, 3),
+        g_euler=RANDOM.uniform(-3, 3, 3),
+        field=float(RANDOM.uniform(0.01, 1)),
+        elevation=float(RANDOM.uniform(-1.5, 1.5)),
+        azimuth=float(RANDOM.uniform(-3, 3)),
         local_field=RANDOM.uniform(-0.1, 0.1, 3),
     )
 
@@ -108,7 +111,7 @@ def test_g_two_at_one_tesla_is_28_gigahertz_and_116_micro_electronvolt() -> None
 def test_the_free_electron_has_the_codata_gyromagnetic_ratio() -> None:
     # C2: CODATA 2022 'electron gyromag. ratio in MHz/T', 28 024.951 3861(87)
     printed = codata.physical_constants["electron gyromag. ratio in MHz/T"][0] * 1e6
-    assert zeeman.larmor_frequency(g=row(ELECTRON_G), field=row(1.0))[0] == near(printed, rel=1e-9)
+    assert zeeman.larmor_frequency(g=row(2.00231930436092), field=row(1.0))[0] == near(printed, rel=1e-9)
     assert printed == near(28.0249513861e9, rel=1e-12)
 
 
@@ -192,6 +195,13 @@ def test_a_scalar_g_has_the_chip_normal_as_axis_for_an_electron_and_none_for_a_h
     assert np.isnan(share(one, is_hole=1.0))
 
 
+def test_a_spin_that_sees_no_field_or_has_no_g_along_it_does_not_precess() -> None:
+    cancelled = spin(elevation=0.0, azimuth=0.0, local_field=row(-0.1, 0, 0))
+    flat = spin(g=row(0, 0, 11.5), g_euler=np.zeros(3), elevation=0.0, local_field=np.zeros(3))
+    for one in (cancelled, flat):
+        assert np.isnan(one.vectors()[2]).all()
+
+
 def test_slopes_are_the_derivatives_of_the_frequency_with_local_fields_left_alone() -> None:
     one = spin()
     angles = {"elevation": row(one.elevation), "azimuth": row(one.azimuth)}
@@ -209,8 +219,12 @@ def tensor_window(one: Spin, g_uncertainty: Array, euler_uncertainty: Array) -> 
     _, dot, precession = one.vectors()
     return float(
         zeeman.tensor_uncertainty(
-            g=one.g[None], g_uncertainty=g_uncertainty[None], g_euler=one.g_euler[None],
-            euler_uncertainty=euler_uncertainty[None], field_at_dot=dot, precession_vector=precession,
+            g=one.g[None],
+            g_uncertainty=g_uncertainty[None],
+            g_euler=one.g_euler[None],
+            euler_uncertainty=euler_uncertainty[None],
+            field_at_dot=dot,
+            precession_vector=precession,
         )[0]
     )
 
@@ -248,8 +262,14 @@ def test_field_components_are_independent() -> None:
 
 def test_search_window_is_the_root_sum_square_of_its_six_terms() -> None:
     window = zeeman.search_window(
-        remanence=row(1.0), local=row(2.0), tensor=row(3.0), field_slope=row(-2.0), field_uncertainty=row(2.0),
-        elevation_slope=row(-10.0), elevation_uncertainty=row(0.5), azimuth_slope=row(3.0),
+        remanence=row(1.0),
+        local=row(2.0),
+        tensor=row(3.0),
+        field_slope=row(-2.0),
+        field_uncertainty=row(2.0),
+        elevation_slope=row(-10.0),
+        elevation_uncertainty=row(0.5),
+        azimuth_slope=row(3.0),
         azimuth_uncertainty=row(2.0),
     )
     assert window[0] == near(np.sqrt(1 + 4 + 9 + 16 + 25 + 36))
@@ -286,9 +306,6 @@ def test_axes_of_studies() -> None:
     assert_axes_agree(zeeman.azimuth_slope, field_response=vector, field=field[:1], **angles)
 
 
-@pytest.mark.xfail(
-    strict=True, raises=ValueError, reason="a study of g or g_euler alone: take_along_axis needs equal axes"
-)
 def test_axes_of_studies_of_the_heavy_axis() -> None:
     g, euler, vector = RANDOM.uniform(0.1, 3, (4, 3)), RANDOM.uniform(-1, 1, (4, 3)), RANDOM.uniform(0.1, 1, (4, 3))
     assert_axes_agree(zeeman.heavy_axis_share, g=g, g_euler=euler, precession_vector=vector, is_hole=np.ones(1))
@@ -300,10 +317,23 @@ def test_axes_of_studies_of_spacing_and_window() -> None:
     assert_axes_agree_together(zeeman.spacing, frequency=some, in_use=in_use)
     assert_axes_agree(zeeman.vector_uncertainty, field_response=vector, uncertainty=vector[:1])
     assert_axes_agree(
-        zeeman.tensor_uncertainty, g=g, g_uncertainty=g / 10, g_euler=euler, euler_uncertainty=euler / 10,
-        field_at_dot=vector, precession_vector=vector,
+        zeeman.tensor_uncertainty,
+        g=g,
+        g_uncertainty=g / 10,
+        g_euler=euler,
+        euler_uncertainty=euler / 10,
+        field_at_dot=vector,
+        precession_vector=vector,
     )
     assert_axes_agree(
-        zeeman.search_window, remanence=some, local=some, tensor=some, field_slope=some, field_uncertainty=some[:1],
-        elevation_slope=some, elevation_uncertainty=some[:1], azimuth_slope=some, azimuth_uncertainty=some[:1],
+        zeeman.search_window,
+        remanence=some,
+        local=some,
+        tensor=some,
+        field_slope=some,
+        field_uncertainty=some[:1],
+        elevation_slope=some,
+        elevation_uncertainty=some[:1],
+        azimuth_slope=some,
+        azimuth_uncertainty=some[:1],
     )

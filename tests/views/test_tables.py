@@ -85,8 +85,8 @@ def test_typed_guessed_and_assumed_values_differ(
 @pytest.mark.parametrize(
     ("table", "name", "text", "origin"),
     [
-        ("magnet", "rating", "mT", "unknown"),
-        ("magnet", "since_ramp", "us", "off"),
+        ("magnet", "rating", "T", "unknown"),
+        ("magnet", "since_ramp", "h", "off"),
         ("model", "nuclei", "4", "material"),
         ("workload", "readout", "parity", "default"),
         ("source", "lo", "", "found"),
