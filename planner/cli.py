@@ -92,7 +92,7 @@ def edit(options: argparse.Namespace) -> int:
                 file=sys.stderr,
             )
             return BAD_INPUT
-        terminal.set_escape_delay()
+        terminal.prepare_environment()
         from planner.tui.app import run
 
         return run(document, mouse=options.mouse)

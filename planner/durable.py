@@ -63,6 +63,11 @@ def fingerprint(path: Path) -> str | None:
             return None
 
 
+def fingerprint_of(text: str) -> str:
+    """The fingerprint of a file that holds this text."""
+    return hashlib.sha256(text.encode()).hexdigest()
+
+
 def write_atomically(path: Path, text: str) -> None:
     """Puts the text in place of the file, through symbolic links; mode and where allowed owner stay.
 

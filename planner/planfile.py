@@ -103,11 +103,10 @@ def load(path: Path, *, keep_unknown: bool = False) -> Document:
     """
     try:
         text = durable.read_text(path, LARGEST_FILE)
-        fingerprint = durable.fingerprint(path)
     except durable.ReadError as error:
         raise PlanError([str(error)]) from None
     document = read(text, clean(str(path)), keep_unknown=keep_unknown)
-    return replace(document, path=path, fingerprint=fingerprint)
+    return replace(document, path=path, fingerprint=durable.fingerprint_of(text))
 
 
 def read(text: str, name: str, *, keep_unknown: bool = False) -> Document:
@@ -157,11 +156,12 @@ def save(document: Document, plan: Plan, path: Path, *, overwrite: bool = False)
     on_disk = durable.fingerprint(path)
     expected = document.fingerprint if path == document.path else None
     if on_disk != expected and not overwrite:
-        what = "is not the file that was loaded" if path == document.path else "exists already"
+        loaded = path == document.path
+        what = "is not the file that was loaded: someone else may have written it" if loaded else "exists already"
         raise ChangedOnDisk(f"{path} {what}")
     text, _ = text_of(document, plan)
     durable.write_atomically(path, text)
-    return Document(path, text, plan, durable.fingerprint(path), document.ignored)
+    return Document(path, text, plan, durable.fingerprint_of(text), document.ignored)
 
 
 def _parsed(text: str, name: str) -> dict[str, Any]:

@@ -142,7 +142,7 @@ def test_keys_that_do_not_count_are_said_and_the_plan_is_shown(run: Any, tmp_pat
 def test_in_a_terminal_the_editor_opens(run: Any, monkeypatch: pytest.MonkeyPatch) -> None:
     opened: list[tuple[Any, bool]] = []
     monkeypatch.setattr(terminal, "usable", lambda: True)
-    monkeypatch.setattr(terminal, "set_escape_delay", lambda: None)
+    monkeypatch.setattr(terminal, "prepare_environment", lambda: None)
     monkeypatch.setattr(editor, "run", lambda document, *, mouse: opened.append((document.path, mouse)) or 0)
     assert run(plan(SHORT)).status == run("edit", "--mouse", plan(SHORT)).status == 0
     assert opened == [(Path(plan(SHORT)), False), (Path(plan(SHORT)), True)]

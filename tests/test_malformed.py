@@ -336,7 +336,7 @@ async def misfits(app: Planner, cell: Cell) -> list[str]:
     in_rows = table.startswith("qubit.")
     app.visit("qubits" if in_rows else table)
     await settle(app)
-    grid = app.qubits if in_rows else app.pane
+    grid = app.desk.qubits if in_rows else app.desk.pane
     if not grid.move_to(cell.key):
         return ["there is no such cell"]
     await paste(app, cell.text)

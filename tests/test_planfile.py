@@ -325,19 +325,20 @@ def test_what_can_not_be_saved_leaves_everything_as_it_was(path: Path) -> None:
     assert path.read_bytes() == TYPED.encode()
 
 
-def test_a_file_that_goes_while_it_is_read_is_said_to_be_gone(path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+def test_a_file_that_changes_while_it_is_read_is_noticed_when_saving(
+    path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
     real = planfile.durable.read_text
 
-    def read_and_remove(which: Path, limit: int) -> str:
+    def read_and_change(which: Path, limit: int) -> str:
         text = real(which, limit)
-        which.write_text("", encoding="utf-8")
-        which.unlink()
-        which.mkdir()
+        which.write_text(text + "# someone else\n", encoding="utf-8")
         return text
 
-    monkeypatch.setattr(planfile.durable, "read_text", read_and_remove)
-    with pytest.raises(PlanError, match="is a folder"):
-        load(path)
+    monkeypatch.setattr(planfile.durable, "read_text", read_and_change)
+    document = load(path)
+    with pytest.raises(ChangedOnDisk, match="is not the file that was loaded"):
+        save(document, document.plan, path)
 
 
 # -- properties: any text that is a plan, any edits that are accepted

@@ -8,8 +8,6 @@ from typing import ClassVar
 from textual import events, work
 from textual.app import App, ComposeResult
 from textual.binding import Binding, BindingType
-from textual.containers import Horizontal
-from textual.widgets import Static
 
 from planner import session as sessions
 from planner.evaluate import Evaluation, evaluate
@@ -18,17 +16,12 @@ from planner.session import Session
 from planner.studies.typenext import TypeNext, type_next
 from planner.tui import files, qubits, terminal
 from planner.tui.actions import ACTIONS
+from planner.tui.desk import Desk
 from planner.tui.foot import Foot
 from planner.tui.grid import Grid
-from planner.tui.head import Head
 from planner.tui.help import Help
 from planner.values import GivenError
 from planner.views.editing import NOT_TYPED, given_at, help_at, typing_line
-from planner.views.first_screen import head_lines, too_small
-from planner.views.tables import PANES, margin_table, pane_table, pane_title, qubit_table
-
-WIDE = 120  # columns from which the margins stand beside the other panes
-STOPS = ("qubits", *PANES)
 
 
 class Planner(App[None], inherit_bindings=False):
@@ -48,20 +41,13 @@ class Planner(App[None], inherit_bindings=False):
         self.session: Session = sessions.opened(document)
         self.evaluation: Evaluation = evaluate(document.plan)
         self.following: TypeNext | None = None
-        self.stop = self.chapter = "magnet"  # the pane with the keyboard, and the givens shown below the qubits
         self.news = ""  # what the next move of the cursor, which an action caused, must not wipe out
-        self.head, self.foot, self.narrow = Head(), Foot(), Static("", id="narrow", markup=False)
-        self.qubits = Grid(qubit_table(self.evaluation), title="qubits", id="qubits")
-        self.pane = Grid(pane_table(self.evaluation, self.chapter, 80), title=pane_title(self.chapter), id="pane")
-        self.margins = Grid(margin_table(self.evaluation, 80), title="margins", id="margins")
+        self.desk, self.foot = Desk(self.evaluation), Foot()
 
     def compose(self) -> ComposeResult:
-        """Head, qubits, a pane and the margins, foot; or one line where the window is too small."""
-        yield self.head
-        yield self.qubits
-        yield Horizontal(self.pane, self.margins, id="lower")
+        """Desk and foot."""
+        yield self.desk
         yield self.foot
-        yield self.narrow
 
     def on_mount(self) -> None:
         """The field is what people look for first."""
@@ -72,18 +58,15 @@ class Planner(App[None], inherit_bindings=False):
             self.foot.say(note, bad=True)
 
     def on_resize(self, event: events.Resize) -> None:
-        """Another size: other panes beside each other, or the one line where it is too small."""
-        message = too_small(event.size.width, event.size.height)
-        for part in (self.head, self.qubits, self.query_one("#lower"), self.foot):
-            part.display = not message
-        self.narrow.display = bool(message)
-        self.narrow.update(message)
+        """Another size: other panes beside each other, or one line where it is too small."""
+        self.foot.display = self.desk.resize(event)
         self.call_next(self.resume)  # the app knows its new size only after this message
 
     def resume(self) -> None:
         """Arrange for the new size; what was hidden has lost the keyboard."""
-        self.arrange()
-        (self.foot if self.foot.asking else self.grid).focus(scroll_visible=False)
+        self.desk.lay_out()
+        self.show_head()
+        (self.foot if self.foot.asking else self.desk.grid).focus(scroll_visible=False)
 
     # -- showing
 
@@ -93,25 +76,13 @@ class Planner(App[None], inherit_bindings=False):
         self.session = session
         if plan_changed:
             self.evaluation, self.following = evaluate(session.plan), None
-            self.qubits.show(qubit_table(self.evaluation))
+            self.desk.show(self.evaluation)
             self.look_ahead(self.evaluation)
-        self.arrange()
-
-    def arrange(self) -> None:
-        """Show the evaluation around the qubits: head, givens and margins, as many as the window has room for."""
-        wide = self.size.width >= WIDE
-        on_margins = self.stop == "margins"
-        self.margins.display, self.pane.display = wide or on_margins, wide or not on_margins
-        half = self.size.width // 2 if wide else self.size.width
         self.show_head()
-        self.qubits.styles.max_height = max(5, self.size.height // 2 - 2)
-        self.margins.show(margin_table(self.evaluation, half))
-        self.pane.show(pane_table(self.evaluation, self.chapter, half), title=pane_title(self.chapter))
 
     def show_head(self) -> None:
         """Show the lines on top."""
-        state = "saved" if self.session.saved else "not saved"
-        self.head.show(head_lines(self.evaluation, self.following, state, self.size.width))
+        self.desk.show_head(self.following, saved=self.session.saved)
 
     @work(thread=True, exclusive=True)
     def look_ahead(self, evaluation: Evaluation) -> None:
@@ -127,32 +98,20 @@ class Planner(App[None], inherit_bindings=False):
 
     def visit(self, stop: str) -> None:
         """Go to a pane."""
-        self.stop = stop
-        self.chapter = self.chapter if stop in {"qubits", "margins"} else stop
-        self.arrange()
-        self.grid.focus(scroll_visible=False)
-        self.foot.say(help_at(self.evaluation, self.grid.cursor_key))
-
-    @property
-    def grid(self) -> Grid:
-        """The grid that has the keyboard while nothing is asked."""
-        return {"qubits": self.qubits, "margins": self.margins}.get(self.stop, self.pane)
+        self.desk.visit(stop)
+        self.foot.say(help_at(self.evaluation, self.desk.grid.cursor_key))
 
     # -- keys and what comes of them
 
     def on_key(self, event: events.Key) -> None:
-        """Keys that no grid takes: Space opens the actions, Tab goes on. A key while nothing has the keyboard is not lost."""
-        if self.focused is None:
-            self.grid.focus(scroll_visible=False)
-            self.grid.post_message(events.Key(event.key, event.character))
+        """Keys that no grid takes: Space opens the actions, Tab goes on. A key while no grid has the keyboard is not lost."""
+        if not isinstance(self.focused, Grid):
+            self.desk.take_keyboard()
+            self.desk.grid.post_message(events.Key(event.key, event.character))
         elif event.key == "space":
             self.foot.choose(self.action_do)
         elif event.key in {"tab", "shift+tab"}:
-            self.go_on(1 if event.key == "tab" else -1)
-
-    def go_on(self, step: int) -> None:
-        """The next pane, or the one before."""
-        self.visit(STOPS[(STOPS.index(self.stop) + step) % len(STOPS)])
+            self.visit(self.desk.beside(1 if event.key == "tab" else -1))
 
     def on_grid_moved(self, message: Grid.Moved) -> None:
         """The help line follows the cursor."""
@@ -174,7 +133,7 @@ class Planner(App[None], inherit_bindings=False):
         if not self.attempt(lambda: sessions.typed(self.session, address, message.text), message.grid.accept):
             message.grid.reject()
         elif message.step in {"next", "previous"}:
-            self.go_on(1 if message.step == "next" else -1)
+            self.visit(self.desk.beside(1 if message.step == "next" else -1))
         else:
             self.foot.say(help_at(self.evaluation, message.grid.cursor_key))
 

@@ -2,20 +2,16 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from pathlib import Path
-from typing import TYPE_CHECKING
 
 from planner import session as sessions
 from planner.durable import ReadError, SaveError
 from planner.planfile import ChangedOnDisk, text_of
-
-if TYPE_CHECKING:
-    from collections.abc import Callable
-
-    from planner.tui.app import Planner
+from planner.tui.editor import Editor
 
 
-def save(app: Planner, then: Callable[[], None] = lambda: None) -> None:
+def save(app: Editor, then: Callable[[], None] = lambda: None) -> None:
     """Save under the present name; asks first where comments would be lost. `then` follows when it is saved."""
     _, in_house_form = text_of(app.session.document, app.session.plan)
     if in_house_form:
@@ -28,12 +24,12 @@ def save(app: Planner, then: Callable[[], None] = lambda: None) -> None:
         write(app, app.session.path, then)
 
 
-def save_as(app: Planner, then: Callable[[], None] = lambda: None) -> None:
+def save_as(app: Editor, then: Callable[[], None] = lambda: None) -> None:
     """Ask for a name and save there."""
     app.foot.prompt("save as", str(app.session.path), lambda text: _to_name(app, text, then))
 
 
-def leave(app: Planner) -> None:
+def leave(app: Editor) -> None:
     """End the editor; with edits that are not saved, ask first."""
     if app.session.saved:
         app.exit()
@@ -45,13 +41,13 @@ def leave(app: Planner) -> None:
         )
 
 
-def write(app: Planner, path: Path, then: Callable[[], None], *, overwrite: bool = False) -> None:
+def write(app: Editor, path: Path, then: Callable[[], None], *, overwrite: bool = False) -> None:
     """Write the plan; on any trouble ask what to do, with the plan still in memory."""
     try:
         app.take(sessions.saved(app.session, path, overwrite=overwrite))
     except ChangedOnDisk as trouble:
         app.foot.ask(
-            f"{trouble}: someone else may have written it.",
+            f"{trouble}.",
             "f save under another name  o overwrite it",
             {"f": lambda: save_as(app, then), "o": lambda: write(app, path, then, overwrite=True)},
         )
@@ -62,7 +58,7 @@ def write(app: Planner, path: Path, then: Callable[[], None], *, overwrite: bool
         then()
 
 
-def _to_name(app: Planner, text: str, then: Callable[[], None]) -> None:
+def _to_name(app: Editor, text: str, then: Callable[[], None]) -> None:
     name = text.strip()
     if not name or "\0" in name:
         app.foot.say("Not saved: a file needs a name.", bad=True)

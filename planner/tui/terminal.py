@@ -49,9 +49,14 @@ def plain_ascii() -> bool:
     return codecs.lookup(encoding).name != "utf-8" or term == "linux" or term.startswith("vt")
 
 
-def set_escape_delay() -> None:
-    """Waits long enough for the rest of a key's sequence, unless the user chose otherwise. Call before Textual."""
+def prepare_environment() -> None:
+    """Waits long enough for the rest of a key's sequence, unless the user chose otherwise. Call before Textual.
+
+    A size that some wrapper left in the environment would be believed before the terminal's own and freeze the layout.
+    """
     os.environ.setdefault("ESCDELAY", str(ESCAPE_DELAY_MS))
+    for name in ("COLUMNS", "LINES"):
+        os.environ.pop(name, None)
 
 
 async def settle(app: App[Any]) -> None:

@@ -161,7 +161,7 @@ def _values(evaluation: Evaluation, key: str) -> dict[str, Any]:
     if column.of_plan:
         return {"value": values[0], **({"why": str(column.why[0])} if 0 in column.why else {})}
     names = evaluation.names
-    why = {names[row]: str(reason) for row, reason in column.why.items()}
+    why = {names[row]: str(reason.of(names[row])) for row, reason in column.why.items()}
     return {"values": dict(zip(names, values, strict=True)), **({"why": why} if why else {})}
 
 

@@ -18,6 +18,7 @@ from planner.plan import SECTIONS, address_of, stated, table_givens
 from planner.planfile import load
 from planner.soundness import edited
 from planner.tui import app as editor
+from planner.tui import desk
 from planner.tui.actions import ACTIONS, RESTING
 from planner.tui.app import Planner
 from planner.tui.grid import Grid
@@ -195,7 +196,7 @@ def test_another_size_rearranges_at_once(drafted: Path) -> None:
         assert lines[0].startswith("HELP")
         await keys(app, "escape")
         await painted(app)
-        assert len(screen(app)[0]) == 100 and app.focused is app.qubits
+        assert len(screen(app)[0]) == 100 and app.focused is app.desk.qubits
 
     use(drafted, scenario)
 
@@ -213,16 +214,16 @@ def test_however_long_the_names_the_state_stays_in_view(tmp_path: Path) -> None:
 def test_tab_goes_through_all_panes_and_back(drafted: Path) -> None:
     async def scenario(app: Planner) -> None:
         seen = []
-        for _ in editor.STOPS:
-            seen.append(app.stop)
+        for _ in desk.STOPS:
+            seen.append(app.desk.stop)
             await keys(app, "tab")
             await painted(app)
-            assert f"-- {pane_title(app.stop)} " in "\n".join(screen(app))
+            assert f"-- {pane_title(app.desk.stop)} " in "\n".join(screen(app))
             assert isinstance(app.focused, Grid) and app.focused.cursor_key
-        assert sorted(seen) == sorted(editor.STOPS) and app.stop == "magnet"
+        assert sorted(seen) == sorted(desk.STOPS) and app.desk.stop == "magnet"
         for stop in reversed(seen):
             await keys(app, "shift+tab")
-            assert app.stop == stop
+            assert app.desk.stop == stop
 
     use(drafted, scenario)
 
@@ -272,7 +273,7 @@ def test_the_actions_line_closes_with_escape_and_waits_on_other_letters(drafted:
         await keys(app, "escape")
         await painted(app)
         assert screen(app)[-1] == RESTING and foot(app) == before
-        assert app.focused is app.pane and app.session.plan == app.session.document.plan
+        assert app.focused is app.desk.pane and app.session.plan == app.session.document.plan
 
     use(drafted, scenario)
 
@@ -298,10 +299,10 @@ def test_typing_edits_and_enter_takes(drafted: Path) -> None:
 def test_enter_edits_the_present_text_and_escape_gives_up(drafted: Path) -> None:
     async def scenario(app: Planner) -> None:
         await keys(app, "down", "enter")
-        assert app.pane.typing
+        assert app.desk.pane.typing
         await keys(app, *" CD14", "escape")
         await painted(app)
-        assert not app.pane.typing and not app.session.past
+        assert not app.desk.pane.typing and not app.session.past
         assert foot(app).startswith("magnet.elevation: ")
         await keys(app, "enter", *["backspace"] * len("correction"), *"CD14", "enter")
         assert typed(app, "magnet.elevation") == "0 ± 0.5 deg; estimate after the mount CD14"
@@ -317,7 +318,7 @@ def test_a_text_longer_than_can_be_typed_is_not_cut_by_editing_it(tmp_path: Path
     async def scenario(app: Planner) -> None:
         app.visit("")
         await settle(app)
-        assert app.pane.move_to("note")
+        assert app.desk.pane.move_to("note")
         await keys(app, "enter", "backspace", "enter")
         assert typed(app, "note") == note[:-1]
 
@@ -344,7 +345,7 @@ def test_a_refused_text_stays_to_be_mended_and_the_message_says_how(drafted: Pat
             while_typing = foot(app)
             await keys(app, "tab")
             await painted(app)
-            assert app.pane.typing and app.stop == "magnet" and not app.session.past
+            assert app.desk.pane.typing and app.desk.stop == "magnet" and not app.session.past
             assert foot(app) == while_typing and part in foot(app)
             await keys(app, "escape")
         await keys(app, *"350", "enter")
@@ -356,9 +357,9 @@ def test_a_refused_text_stays_to_be_mended_and_the_message_says_how(drafted: Pat
 def test_results_and_margins_are_not_typed(drafted: Path) -> None:
     async def scenario(app: Planner) -> None:
         await keys(app, "shift+tab", "5")
-        assert app.stop == "margins" and foot(app) == NOT_TYPED
+        assert app.desk.stop == "margins" and foot(app) == NOT_TYPED
         await keys(app, "shift+tab", "right", "5")
-        assert app.stop == "qubits" and foot(app) == NOT_TYPED
+        assert app.desk.stop == "qubits" and foot(app) == NOT_TYPED
         assert not app.session.past
 
     use(drafted, scenario)
@@ -367,11 +368,11 @@ def test_results_and_margins_are_not_typed(drafted: Path) -> None:
 def test_up_down_and_tab_take_the_text_and_go_on(drafted: Path) -> None:
     async def scenario(app: Planner) -> None:
         await keys(app, "down", "down", *"5 deg", "up")
-        assert app.pane.cursor_key == "magnet.elevation"
+        assert app.desk.pane.cursor_key == "magnet.elevation"
         await keys(app, *"1 deg", "down")
-        assert app.pane.cursor_key == "magnet.azimuth"
+        assert app.desk.pane.cursor_key == "magnet.azimuth"
         await keys(app, *"6 deg", "tab")
-        assert app.stop == "clock"
+        assert app.desk.stop == "clock"
         assert [typed(app, f"magnet.{name}") for name in ("azimuth", "elevation")] == ["6 deg", "1 deg"]
         assert len(app.session.past) == 3
 
@@ -380,7 +381,7 @@ def test_up_down_and_tab_take_the_text_and_go_on(drafted: Path) -> None:
 
 def test_an_empty_text_brings_the_default_back(drafted: Path) -> None:
     async def scenario(app: Planner) -> None:
-        app.pane.move_to("magnet.mode")
+        app.desk.pane.move_to("magnet.mode")
         await keys(app, "enter", *["backspace"] * len("persistent"))
         assert foot(app).startswith("removed")
         await keys(app, "enter")
@@ -399,7 +400,7 @@ def test_every_given_of_every_pane_is_reached_with_the_arrows_and_edited(tmp_pat
     async def scenario(app: Planner) -> None:
         app.visit(pane)
         await settle(app)
-        reached = [key async for key in walked(app, app.pane)]
+        reached = [key async for key in walked(app, app.desk.pane)]
         assert sorted(reached) == sorted(f"{pane}.{name}" if pane else name for name in table_givens(pane))
 
     use(path, scenario)
@@ -439,12 +440,12 @@ def test_every_given_of_a_qubit_is_reached_in_its_row(drafted: Path) -> None:
         app.visit("qubits")
         await settle(app)
         await keys(app, "down", "home")
-        reached = {app.qubits.cursor_key}
-        for _ in app.qubits._table.columns:
+        reached = {app.desk.qubits.cursor_key}
+        for _ in app.desk.qubits._table.columns:
             await keys(app, "right")
-            reached.add(app.qubits.cursor_key)
+            reached.add(app.desk.qubits.cursor_key)
         assert {f"qubit.Q2.{name}" for name in table_givens("qubit")} <= reached
-        app.qubits.move_to("qubit.Q2.valley_splitting")
+        app.desk.qubits.move_to("qubit.Q2.valley_splitting")
         await keys(app, *"90", "enter")
         assert typed(app, "qubit.Q2.valley_splitting") == "90 ueV"
 
@@ -515,7 +516,7 @@ def test_an_edit_repaints_only_the_cells_that_changed(drafted: Path, monkeypatch
         await keys(app, "enter")
         await done(app)
         monkeypatch.setattr(Grid, "refresh", refresh)
-        after, grid = qubit_table(app.evaluation), app.qubits
+        after, grid = qubit_table(app.evaluation), app.desk.qubits
         changed = {
             Region(span.x, grid._above + row, span.width, 1)
             for row in range(6)
@@ -560,10 +561,10 @@ def test_a_thousand_qubits_are_edited_like_six(tmp_path: Path, monkeypatch: pyte
         assert len(painted_lines) < 100  # the lines in view, not the rows of the plan
         app.visit("qubits")
         await settle(app)
-        app.qubits.move_to("qubit.N990.name")
+        app.desk.qubits.move_to("qubit.N990.name")
         await keys(app, "pagedown", "pagedown", "right")
         await painted(app)
-        assert app.qubits.cursor_key == "larmor.frequency@N998"
+        assert app.desk.qubits.cursor_key == "larmor.frequency@N998"
         assert any(line.startswith(" N998>") for line in screen(app))
 
     use(path, scenario)
@@ -582,7 +583,7 @@ def test_a_qubit_is_added_as_a_copy_below_the_cursor(drafted: Path) -> None:
         await keys(app, "enter")
         await done(app)
         assert [row.name for row in app.session.plan.qubit] == ["Q1", "Q2", "Q7", "Q3", "Q4", "Q5", "Q6"]
-        assert app.qubits.cursor_key == "qubit.Q7.name" and app.qubits.has_focus
+        assert app.desk.qubits.cursor_key == "qubit.Q7.name" and app.desk.qubits.has_focus
         assert typed(app, "qubit.Q7.valley_splitting") == typed(app, "qubit.Q2.valley_splitting")
 
     use(drafted, scenario)
@@ -607,7 +608,7 @@ def test_a_prompt_can_be_given_up_and_takes_no_control_characters(drafted: Path)
         await painted(app)
         assert "Q7\ufffd[31m red" in screen(app)[-3] and "\x1b" not in "".join(screen(app))
         await keys(app, "escape")
-        assert not app.session.past and app.focused is app.pane
+        assert not app.session.past and app.focused is app.desk.pane
 
     use(drafted, scenario)
 

@@ -607,10 +607,10 @@ def test_pasted_text_is_one_printable_line(text: str) -> None:
 
 def test_the_escape_delay_is_set_unless_the_user_chose_one(monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.delenv("ESCDELAY", raising=False)
-    terminal.set_escape_delay()
+    terminal.prepare_environment()
     assert os.environ["ESCDELAY"] == "400"
     monkeypatch.setenv("ESCDELAY", "50")
-    terminal.set_escape_delay()
+    terminal.prepare_environment()
     assert os.environ["ESCDELAY"] == "50"
 
 
@@ -665,7 +665,7 @@ TOY = """
 import os, signal, sys, threading
 from pathlib import Path
 from planner.tui import terminal
-terminal.set_escape_delay()
+terminal.prepare_environment()
 from textual.app import App
 from textual.widgets import Static
 from planner.tui.grid import Grid

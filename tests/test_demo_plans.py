@@ -1,0 +1,99 @@
+"""The demo run: what each shipped plan must read, against the worked scenario that the demo plans were made from.
+
+The scenario (an invented run, worked out by hand for this project) states frequencies, T2* and margins. Where the program
+differs, the row says by how much and why; everything else must agree to the digits that the scenario prints.
+"""
+
+from __future__ import annotations
+
+from functools import cache
+from pathlib import Path
+
+import pytest
+
+from planner.evaluate import Evaluation, evaluate
+from planner.planfile import load
+
+PLANS = Path(__file__).parents[1] / "plans"
+
+
+@cache
+def read(name: str) -> Evaluation:
+    return evaluate(load(PLANS / f"{name}.toml").plan)
+
+
+def row(evaluation: Evaluation, key: str, scale: float) -> list[float]:
+    return [float(value) * scale for value in evaluation.columns[key].base()]
+
+
+def test_every_plan_says_that_it_is_invented() -> None:
+    for path in PLANS.glob("*.toml"):
+        assert path.read_text("utf-8").startswith("# Invented demo"), path
+
+
+@pytest.mark.parametrize(
+    ("plan", "gigahertz"),
+    [
+        ("sq6-03-drafted", [15.845, 15.991, 16.114, 16.263, 16.330, 16.485]),
+        ("sq6-03", [13.886, 14.032, 14.155, 14.304, 14.371, 14.526]),
+        ("gh4-11-drafted", [1.284, 1.482, 1.264, 1.959]),
+        ("gh4-11", [1.414, 1.374, 1.530, 1.453]),
+    ],
+)
+def test_frequencies(plan: str, gigahertz: list[float]) -> None:
+    assert row(read(plan), "larmor.frequency", 1e-9) == pytest.approx(gigahertz, abs=5.1e-4)
+
+
+@pytest.mark.parametrize(
+    ("plan", "share"), [("gh4-11-drafted", [0.13, 0.25, 0.45, 0.53]), ("gh4-11", [0.20, 0.24, 0.16, 0.18])]
+)
+def test_share_of_the_heavy_axis(plan: str, share: list[float]) -> None:
+    assert row(read(plan), "larmor.axis", 1.0) == pytest.approx(share, abs=5.1e-3)
+
+
+@pytest.mark.parametrize(
+    ("plan", "name", "qubit", "margin", "verdict", "scenario", "why"),
+    [
+        ("sq6-03-drafted", "valley", "Q4", 0.3426, "short", 0.34, ""),
+        ("sq6-03", "valley", "Q4", 1.355, "clear", 1.36, ""),
+        # 1.02 there: a coarser 1/f (rms cut at the shot's length); the exact integral to the wait is 1.2 % smaller
+        ("sq6-03-drafted", "wait", "Q3", 1.032, "tight", 1.02, "coarser 1/f"),
+        ("sq6-03", "wait", "Q3", 1.032, "tight", 1.02, "coarser 1/f"),
+        ("gh4-11-drafted", "wait", "Q4", 0.667, "short", 0.67, ""),
+        ("gh4-11", "wait", "Q1", 1.272, "clear", 1.26, "coarser 1/f"),
+        # 1.55 there: the window is held against 5 k (T + u); here the tolerance makes a range instead
+        ("sq6-03-drafted", "readout", "", 1.710, "clear", 1.55, "tolerance of T in the expected side"),
+        ("gh4-11-drafted", "readout", "", 4.463, "clear", 3.87, "tolerance of T in the expected side"),
+        # 8.80, 1.69 and 6.02 there: only the pi pulse; here relaxation (where T1 is stated) belongs to a gate, and the pulse
+        # sees the 1/f noise of its own, shorter time
+        ("sq6-03-drafted", "gate", "Q3", 8.34, "clear", 8.80, "relaxation, and 1/f over the pulse"),
+        ("gh4-11-drafted", "gate", "Q4", 1.673, "clear", 1.69, "exact average, and 1/f over the pulse"),
+        ("gh4-11", "gate", "Q1", 5.921, "clear", 6.02, "exact average, and 1/f over the pulse"),
+    ],
+)
+def test_margins(plan: str, name: str, qubit: str, margin: float, verdict: str, scenario: float, why: str) -> None:
+    found = read(plan).margin(name)
+    assert found is not None
+    assert (found.row, found.verdict) == (qubit, verdict)
+    assert found.value == pytest.approx(margin, rel=1e-3)  # by = regression
+    assert found.value == pytest.approx(scenario, rel=0.16 if why else 0.012), why or "agrees to the printed digits"
+
+
+def test_decay_times_are_longer_than_the_scenario_by_its_coarser_flicker() -> None:
+    # the scenario: 10.5, 9.5, 8.6, 8.9, 9.8, 10.9 us with calibration and drift counted in; they do not shorten T2* here
+    assert row(read("sq6-03-drafted"), "coherence.t2_star", 1e6) == pytest.approx(
+        [10.5, 9.5, 8.6, 8.9, 9.8, 10.9], rel=0.08
+    )
+
+
+def test_the_drafted_holes_have_one_cause_for_two_short_margins() -> None:
+    evaluation = read("gh4-11-drafted")
+    short = [margin.name for margin in evaluation.ranked if margin.verdict == "short"]
+    assert short == ["wait", "field-noise"]
+
+
+def test_verdicts_of_the_plans() -> None:
+    verdicts = {path.stem: read(path.stem).verdict for path in PLANS.glob("*.toml")}
+    assert verdicts == {
+        "sq6-03-drafted": "short", "sq6-03": "tight", "gh4-11-drafted": "short", "gh4-11": "clear", "minimal": "unknown",
+    }  # fmt: skip
