@@ -27,18 +27,23 @@ WANTED_MARGIN = Address("", None, "wanted_margin")
 class Evaluation:
     """Everything that follows from a plan.
 
-    `rows` are the indices of its qubits that are not dead, `names` theirs; `used` are the positions in `rows` that are in
-    use and judged. `columns` hold givens and results by key.
+    `rows` are the indices of its qubits that are not dead, `tables` the names of every table's rows ("": the plan, one row);
+    `used` are the positions in `rows` that are in use and judged. `columns` hold givens and results by key.
     """
 
     plan: Plan
     graph: Graph
     rows: tuple[int, ...]
-    names: tuple[str, ...]
+    tables: Mapping[str, tuple[str, ...]]
     used: tuple[int, ...]
     columns: Mapping[str, Column]
     margins: tuple[Margin, ...]
     not_asked: Mapping[str, str]
+
+    @property
+    def names(self) -> tuple[str, ...]:
+        """Names of the qubits that are not dead."""
+        return self.tables["qubit"]
 
     @property
     def verdict(self) -> str:
@@ -98,7 +103,7 @@ def evaluate(plan: Plan, swept: Mapping[str, Array] | None = None) -> Evaluation
     wanted = resolved(plan, WANTED_MARGIN).value
     assert isinstance(wanted, Quantity)
     margins, not_asked = judge(columns, wiring.limits, used, names, number(wanted))
-    return Evaluation(plan, wiring, rows, names["qubit"], used, columns, margins, not_asked)
+    return Evaluation(plan, wiring, rows, names, used, columns, margins, not_asked)
 
 
 def resolve_all(plan: Plan) -> dict[str, Resolved]:
