@@ -24,7 +24,7 @@ if TYPE_CHECKING:
 MET, NOT_MET, BAD_INPUT = 0, 1, 2
 KILLED = 128  # plus the number of a signal, as shells say it
 OF_THE_PROGRAM = ("-h", "--help", "--version")
-COMMANDS = ("edit", "check", "report", "words")
+COMMANDS = ("edit", "check", "report", "why", "words")
 LONGEST_SHOWN = 120  # characters of an argument that a message repeats
 WITH_HELP = "evaluate as if this given were typed; never kept; may be repeated"
 
@@ -142,6 +142,24 @@ def report(options: argparse.Namespace) -> int:
     return MET
 
 
+def why(options: argparse.Namespace) -> int:
+    """Print why a given, result or margin is what it is."""
+    from planner.evaluate import evaluate
+    from planner.plan import UnknownKey
+    from planner.views.why import explanation
+
+    document = _document(Path(options.plan), options.with_)
+    if document is None:
+        return BAD_INPUT
+    try:
+        lines = explanation(evaluate(document.plan), options.key, options.row)
+    except UnknownKey as error:
+        print(error, file=sys.stderr)
+        return BAD_INPUT
+    print("\n".join(lines))
+    return MET
+
+
 def words(options: argparse.Namespace) -> int:
     """Print the dictionary, or the entries that contain a text."""
     from planner.views.words import dictionary
@@ -245,6 +263,23 @@ def _parser() -> _Parser:
     )
     one.add_argument("plan", metavar="PLAN", help="plan file")
     one.add_argument("--format", choices=("text", "json"), default="text", help="text (default) or json")
+    one = _command(
+        commands,
+        "why",
+        why,
+        "why a number is what it is: law, source, what went in",
+        "planner why plans/sq6-03.toml valley.distance --qubit Q4",
+        "KEY is a given, a result or the name of a margin, as 'planner words' lists them.",
+    )
+    one.add_argument("plan", metavar="PLAN", help="plan file")
+    one.add_argument("key", metavar="KEY", help="a given, a result or a margin")
+    one.add_argument(
+        "--qubit",
+        dest="row",
+        default="",
+        metavar="NAME",
+        help="the qubit (or row of another table) it is asked for; without it a margin's worst, else the first",
+    )
     one = _command(
         commands,
         "words",

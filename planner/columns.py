@@ -17,7 +17,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from planner.declare import Form, Given, Switch
-from planner.graph import HOST, givens
+from planner.graph import HOST, PAIR_PLACES, givens
 from planner.kinds import Quantity
 from planner.materials import material
 from planner.physics import Array
@@ -86,6 +86,11 @@ class Column:
         return self.values.ndim > 1 + self.trailing
 
     @property
+    def plain(self) -> bool:
+        """Whether every row is known, no bound, and the same along every study's axis."""
+        return not self.why and not self.bound and not self.has_lead
+
+    @property
     def spread(self) -> Array:
         """Standard uncertainties, 0 where none was typed."""
         return np.zeros_like(self.values) if self.tolerance is None else self.tolerance
@@ -126,6 +131,16 @@ def host_columns(plan: Plan) -> dict[str, Column]:
     return {key: Column(np.array([number]), "") for key, number in zip(HOST, numbers, strict=True)}
 
 
+def pair_columns(plan: Plan, qubits: Sequence[str]) -> dict[str, Column]:
+    """Positions of the qubits of each pair among those that are not dead, nan for one that is."""
+    places = {name: float(place) for place, name in enumerate(qubits)}
+    ends = {
+        key: [places.get(getattr(pair, key.partition(".")[2].removesuffix("_place")), np.nan) for pair in plan.pair]
+        for key in PAIR_PLACES
+    }
+    return {key: Column(np.array(values, dtype=float), "pair") for key, values in ends.items()}
+
+
 def swept_column(column: Column, values: Array, row: int | None, *, zero_unset: bool) -> Column:
     """The column with other values along new leading axes, in one row or (None) in the plan's.
 
@@ -147,10 +162,9 @@ def swept_column(column: Column, values: Array, row: int | None, *, zero_unset: 
 def _column(plan: Plan, key: str, table: str, stated: list[Value | None], fallback: Value | None) -> Column:
     given = givens()[key]
     if given.form is not Form.QUANTITY:
-        words = (fallback if value is None else value for value in stated)
-        return Column(
-            np.full(len(stated), np.nan), table, words=tuple("" if word is None else str(word) for word in words)
-        )
+        usual = "" if fallback is None else str(fallback)
+        words = [usual if value is None else str(value) for value in stated] if any(map(_is_stated, stated)) else None
+        return Column(np.full(len(stated), np.nan), table, words=tuple(words or [usual] * len(stated)))
     size = len(plan.stage) if given.per_stage else max(given.sizes)
     if not any(map(_is_stated, stated)) and stated:  # one value for every row: read it once
         one = _numbers(key, given, [fallback], table, size)
@@ -181,5 +195,7 @@ def _array(values: Sequence[float | tuple[float, ...]], size: int, *, scalar: bo
     """Numbers, or vectors in which one number stands for each component, as an array."""
     if scalar:
         return np.array(values, dtype=float)
+    if not size:  # one number a stage, and no stages
+        return np.zeros((len(values), 0))
     numbers = chain.from_iterable(value if isinstance(value, tuple) else (value,) * size for value in values)
     return np.fromiter(numbers, dtype=float, count=size * len(values)).reshape(-1, size)

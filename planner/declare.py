@@ -12,7 +12,7 @@ import inspect
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 from enum import Enum, IntEnum
-from typing import Any, TypeVar
+from typing import Any, NamedTuple, TypeVar
 
 from planner.kinds import Kind, Quantity
 
@@ -111,10 +111,9 @@ class Given:
     """One value of the plan.
 
     `sizes` are the accepted numbers of components, `options` the words of a choice with a line of explanation each.
-    `planned` are words that a later edition will accept. The value must lie above `above`, at or above `least`, below `below`
-    and at or below `most` (SI; None: no bound). `zero_unset`: a 0 counts as absent; `nonzero`: not every component may be 0;
-    `per_stage`: one number for each stage. `later`: read, checked and written, but no result uses it yet. `example` is a
-    text that would be accepted, `sensible` what people use.
+    The value must lie above `above`, at or above `least`, below `below` and at or below `most` (SI; None: no bound).
+    `zero_unset`: a 0 counts as absent; `nonzero`: not every component may be 0; `per_stage`: one number for each stage.
+    `example` is a text that would be accepted, `sensible` what people use.
     """
 
     form: Form
@@ -126,7 +125,6 @@ class Given:
     default: str = ""
     sizes: tuple[int, ...] = (1,)
     options: Mapping[str, str] = field(default_factory=dict)
-    planned: tuple[str, ...] = ()
     above: float | None = None
     least: float | None = None
     below: float | None = None
@@ -136,7 +134,6 @@ class Given:
     per_stage: bool = False
     example: str = ""
     sensible: str = ""
-    later: bool = False
 
 
 def given(form: Form | Kind, help: str, nature: Nature, *, locks: Lock | None = None, **rest: Any) -> Any:
@@ -185,7 +182,7 @@ class Input:
     key: str
     optional: bool = False
     tolerance: bool = False
-    word: str = ""
+    word: str | None = None
     unless: str = ""
     when: tuple[Switch, ...] = ()
 
@@ -215,11 +212,15 @@ class Unknown:
 
 @dataclass(frozen=True, slots=True)
 class Bound:
-    """A result that is only an upper bound where the law `where` (of `inputs`) gives true, and what the reader is told."""
+    """A result that is only an upper bound where the law `where` (of `inputs`) gives true, and what the reader is told.
+
+    `least` is the share of it that it may be; 0: it may be anything below.
+    """
 
     where: Callable[..., Any]
     inputs: Mapping[str, str]
     note: str
+    least: float = 0.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -276,21 +277,30 @@ class Compare:
     gap: str = "{expected} of {allowed} {unit} allowed"
 
 
+class Ask(NamedTuple):
+    """A switch that must be on for a margin to be asked, and the reason it is not asked while the switch is off."""
+
+    switch: Switch
+    otherwise: str
+
+
 @dataclass(frozen=True, slots=True)
 class Limit:
     """The bound on a result, which makes the margin of the same name; of several comparisons the worst counts.
 
-    `asked` is the switch that must be on for the margin to be asked, `not_asked` the reason while it is off. `tight_counts`
-    is False for a bound that is met or not, never tight.
+    It is asked while every switch of `asked` is on. `per` is what its own rows are, for limits whose comparisons are of
+    different rows that of the plan. `none_made` is why it is unknown where no comparison can be made. `tight_counts` is
+    False for a bound that is met or not, never tight; `quiet` margins stay out of the first screen while they are above 10.
     """
 
     name: str
     meaning: str
     compares: tuple[Compare, ...]
     per: Per = Per.QUBIT
-    asked: Switch | None = None
-    not_asked: str = ""
+    asked: tuple[Ask, ...] = ()
+    none_made: Unknown = Unknown("")
     tight_counts: bool = True
+    quiet: bool = False
 
 
 class Chapter:

@@ -3,16 +3,17 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from planner.columns import Column, Reason, given_column, host_columns, swept_column
+from planner.columns import Column, Reason, given_column, host_columns, pair_columns, swept_column
 from planner.declare import Derived, Input, Lock
 from planner.graph import Graph, givens, graph
 from planner.kinds import Quantity
-from planner.margins import CLEAR, VERDICTS, Margin, judge
+from planner.leads import Lead, changes, leads_of, low_end, moved, root_sum_square, scaled
+from planner.margins import CLEAR, VERDICTS, Bench, Margin, judge, typed_though_found
 from planner.physics import Array
 from planner.plan import NAMED, ROWS, Address, Plan, Resolved, addresses, key_of, resolved
 from planner.values import number
@@ -39,6 +40,7 @@ class Evaluation:
     columns: Mapping[str, Column]
     margins: tuple[Margin, ...]
     not_asked: Mapping[str, str]
+    leads: tuple[Lead, ...] = ()
 
     @property
     def names(self) -> tuple[str, ...]:
@@ -66,6 +68,12 @@ class Evaluation:
                 return derived
         raise KeyError(key)
 
+    def range_of(self, key: str) -> tuple[Array, Array]:
+        """Lowest and highest that a result may be, one a row, by tolerances and ranges; nan where it is unknown."""
+        column = self.columns[key]
+        fall, rise = changes(column.values if column.has_lead else column.values[None], len(self.leads))
+        return low_end(column.base(), fall), column.base() + root_sum_square(rise)
+
     def quantity(self, key: str) -> pint.Quantity[Any]:
         """A result as a pint quantity in SI units, rows on the last axis; unknown values are nan."""
         from planner.unitstable import as_pint  # pint takes longer to load than a plan to evaluate
@@ -74,27 +82,28 @@ class Evaluation:
         return quantity
 
 
-def evaluate(plan: Plan, swept: Mapping[str, Array] | None = None) -> Evaluation:
-    """Evaluate a plan without problems (`plan.problems`).
+def evaluate(plan: Plan, swept: Mapping[str, Array] | None = None, *, ranges: bool = True) -> Evaluation:
+    """Evaluate a plan without problems (`soundness.problems`).
 
-    `swept` replaces the SI values of givens (`magnet.field`, `qubit.Q1.rabi_frequency`) by arrays, whose axes every result
-    that depends on them then leads with; a vector's components stand on the last axis. Verdicts are those of the first
-    entry. Raises ValueError for givens that decide which results there are, for words, and for unknown keys.
+    `ranges`: tolerances and the ranges of untyped values are a leading axis of every result that depends on them; margins
+    then have low and high and their verdicts are tempered. `swept` replaces the SI values of givens (`magnet.field`,
+    `qubit.Q1.rabi_frequency`) by arrays, whose axes every result that depends on them then leads with, without ranges; a
+    vector's components stand on the last axis, verdicts are those of the first entry. Raises ValueError for givens that
+    decide which results there are, for words, and for unknown keys.
     """
     wiring = graph()
     roles = given_column(plan, "qubit.role", plan.qubit).words
     rows = tuple(row for row, role in enumerate(roles) if role != "dead")
     tables = {table: plan.rows(table) for table in ROWS} | {"qubit": tuple(plan.qubit[row] for row in rows)}
-    columns = {
-        key: given_column(plan, key, tables.get(key.partition(".")[0], ())) for key in wiring.needed
-    } | host_columns(plan)
-    names = {table: tuple(str(row.name) for row in rows) for table, rows in tables.items() if table in NAMED} | {
-        "": ("",)
-    }
+    names = {table: _names(table, found) for table, found in tables.items()} | {"": ("",)}
+    columns = {key: given_column(plan, key, tables.get(key.partition(".")[0], ())) for key in wiring.needed}
+    columns |= host_columns(plan) | pair_columns(plan, names["qubit"])
+    leads = leads_of(plan, rows) if ranges and not swept else ()
+    columns = {key: moved(column, key, leads) for key, column in columns.items()} if leads else columns
     for key, values in (swept or {}).items():
         _sweep(columns, key, values, names)
     used = tuple(row for row, role in enumerate(columns["qubit.role"].words) if role == "use")
-    scope = _Scope(columns, names, used)
+    scope = _Scope(columns, names, used, leads)
     with np.errstate(invalid="ignore", divide="ignore", over="ignore", under="ignore"):
         for derived in wiring.order:
             typed = columns.get(derived.key)
@@ -102,8 +111,9 @@ def evaluate(plan: Plan, swept: Mapping[str, Array] | None = None) -> Evaluation
                 columns[derived.key] = scope.column(derived)
     wanted = resolved(plan, WANTED_MARGIN).value
     assert isinstance(wanted, Quantity)
-    margins, not_asked = judge(columns, wiring.limits, used, names, number(wanted))
-    return Evaluation(plan, wiring, rows, names, used, columns, margins, not_asked)
+    bench = Bench(columns, np.array(used, dtype=np.intp), names, leads, number(wanted), typed_though_found(columns))
+    margins, not_asked = judge(bench, wiring.limits)
+    return Evaluation(plan, wiring, rows, names, used, columns, margins, not_asked, leads)
 
 
 def resolve_all(plan: Plan) -> dict[str, Resolved]:
@@ -111,6 +121,11 @@ def resolve_all(plan: Plan) -> dict[str, Resolved]:
     places = {key_of(plan, address): address for address in addresses(plan) if address.table != "all_qubits"}
     found = {key: resolved(plan, address) for key, address in places.items()}
     return {key: entry for key, entry in found.items() if entry.value is not None}
+
+
+def _names(table: str, rows: Sequence[Any]) -> tuple[str, ...]:
+    """Names of rows, or their numbers from 1 where a table has none."""
+    return tuple(row.name for row in rows) if table in NAMED else tuple(str(place + 1) for place in range(len(rows)))
 
 
 def too_late(until: Lock | None, passed: str) -> bool:
@@ -125,6 +140,8 @@ class _Scope:
     columns: dict[str, Column]
     names: Mapping[str, tuple[str, ...]]
     used: tuple[int, ...]
+    leads: tuple[Lead, ...]
+    indicators: dict[tuple[str, str], Array] = field(default_factory=dict)
 
     def column(self, derived: Derived) -> Column:
         table, rows, trailing = derived.per.value, len(self.names[derived.per.value]), derived.trailing
@@ -132,13 +149,17 @@ class _Scope:
             nothing = np.full((rows, *trailing), np.nan)
             reason = Reason(derived.off.reason, derived.off.given)
             return Column(nothing, table, len(trailing), dict.fromkeys(range(rows), reason), found=True)
-        sources = {name: source for name, source in derived.sources.items() if self.wanted(source)}
+        sources = {name: source for name, source in derived.sources.items() if not source.when or self.wanted(source)}
         arguments = {name: self.argument(sources.get(name)) for name in derived.inputs}
-        why = self.reasons(sources.values(), table)
+        doubtful = [source for source in sources.values() if not self.columns[source.key].plain]
+        why = self.reasons(doubtful, table) if doubtful else {}
         values = _with_rows(np.asarray(derived.law(**arguments)), rows, trailing)
-        values = self.without_missing(values, sources.values(), table, len(trailing))
+        values = self.without_missing(values, doubtful, table, len(trailing)) if doubtful else values
         values = _explained(derived, values, why)
-        return Column(values, table, len(trailing), why, self.bounds(derived, sources.values(), why), found=True)
+        if derived.bound is not None and derived.bound.least > 0 and self.leads:
+            values = scaled(values, derived.key, self.leads, np.flatnonzero(self.bounded(derived)))
+        bound = self.bounds(derived, doubtful, why) if doubtful or derived.bound is not None else {}
+        return Column(values, table, len(trailing), why, bound, found=True)
 
     def wanted(self, source: Input) -> bool:
         return all(self.columns[switch.key].on(switch) for switch in source.when)
@@ -147,15 +168,21 @@ class _Scope:
         if source is None:
             return np.full(1, np.nan)
         column = self.columns[source.key]
-        if source.word:
-            return np.array([float(word == source.word) for word in column.words])
+        if source.word is not None:
+            return self.indicator(source.key, source.word)
         return column.spread if source.tolerance else column.values
+
+    def indicator(self, key: str, word: str) -> Array:
+        """1 in the rows whose choice is this word, else 0; made once for each word."""
+        if (key, word) not in self.indicators:
+            self.indicators[key, word] = np.array([float(choice == word) for choice in self.columns[key].words])
+        return self.indicators[key, word]
 
     def without_missing(self, values: Array, sources: Iterable[Input], table: str, trailing: int) -> Array:
         """The values with nan wherever a source that is needed there has none, along studies' axes too."""
         for source in sources:
             column = self.columns[source.key]
-            if source.optional or source.word or not (column.why or column.has_lead):
+            if source.optional or source.word is not None or not (column.why or column.has_lead):
                 continue
             absent = column.absent()
             if column.table not in {"", table}:
@@ -173,7 +200,7 @@ class _Scope:
     def reasons(self, sources: Iterable[Input], table: str) -> dict[int, Reason]:
         why: dict[int, Reason] = {}
         for source in sources:
-            if not source.optional and not source.word and self.columns[source.key].why:
+            if not source.optional and source.word is None and self.columns[source.key].why:
                 for row, reason in self.spread(source, table):
                     why.setdefault(row, reason)
         return why
@@ -202,14 +229,18 @@ class _Scope:
         rows = range(len(self.names[table]))
         return frozenset(row for row in rows if (0 if column.table == "" else row) not in column.why)
 
+    def bounded(self, derived: Derived) -> Array:
+        """Rows whose result is only an upper bound."""
+        assert derived.bound is not None
+        arguments = {name: self.columns[key].values for name, key in derived.bound.inputs.items()}
+        rows = len(self.names[derived.per.value])
+        return np.asarray(_with_rows(np.asarray(derived.bound.where(**arguments)), rows, ()).reshape(-1, rows)[0])
+
     def bounds(self, derived: Derived, sources: Iterable[Input], why: Mapping[int, Reason]) -> dict[int, str]:
         """Notes by row: of this result's own bound, and of the bounds it rests on."""
         table, notes = derived.per.value, dict[int, str]()
-        if derived.bound is not None:
-            arguments = {name: self.columns[key].values for name, key in derived.bound.inputs.items()}
-            rows = len(self.names[table])
-            flags = _with_rows(np.asarray(derived.bound.where(**arguments)), rows, ())
-            notes = {int(row): derived.bound.note for row in np.flatnonzero(flags.reshape(-1, rows)[0])}
+        if derived.bound is not None and not derived.bound.least:
+            notes = {int(row): derived.bound.note for row in np.flatnonzero(self.bounded(derived))}
         for source in sources:
             column = self.columns[source.key]
             if column.bound and column.table == table:
@@ -230,7 +261,7 @@ def _explained(derived: Derived, values: Array, why: dict[int, Reason]) -> Array
     A nan that nobody explains is a bug.
     """
     finite = np.isfinite(values)
-    if finite.all():
+    if finite.all():  # also where there are no rows
         return values
     rows = finite.reshape(
         -1, len(values.shape) and values.shape[values.ndim - 1 - len(derived.trailing)], int(np.prod(derived.trailing))

@@ -13,20 +13,41 @@ from planner.chapters import (
     chip,
     clock,
     coherence,
+    coils,
     larmor,
     magnet,
     model,
     noise,
+    pairs,
     source,
     thermal,
+    tones,
     valley,
+    wiring,
     workload,
 )
 from planner.declare import Compare, Derived, Given, Input, Limit, Lock, Missing, Nature, law_of
 from planner.kinds import ENERGY_SQUARED, NUMBER, Kind
 from planner.plan import ROWS, SECTIONS, table_givens
 
-CHAPTERS = (larmor, magnet, clock, source, noise, coherence, calibration, thermal, valley, workload, chip, model)
+CHAPTERS = (
+    larmor,
+    magnet,
+    coils,
+    tones,
+    wiring,
+    pairs,
+    clock,
+    source,
+    noise,
+    coherence,
+    calibration,
+    thermal,
+    valley,
+    workload,
+    chip,
+    model,
+)
 DERIVEDS: tuple[Derived, ...] = tuple(derived for chapter in CHAPTERS for derived in chapter.DERIVEDS)
 LIMITS: tuple[Limit, ...] = tuple(limit for chapter in CHAPTERS for limit in chapter.LIMITS)
 # What the chosen material says of itself; everything that depends on it depends on the choice of the material.
@@ -37,6 +58,8 @@ HOST: Mapping[str, Kind] = {
     "host.moment": ENERGY_SQUARED,
     "host.barrier_moment": ENERGY_SQUARED,
 }
+
+PAIR_PLACES: Mapping[str, Kind] = {"pair.first_place": NUMBER, "pair.second_place": NUMBER}
 
 
 class WiringError(Exception):
@@ -134,8 +157,8 @@ def _switches(deriveds: tuple[Derived, ...], limits: tuple[Limit, ...]) -> Itera
         if derived.only is not None:
             yield derived.only.key
     for limit in limits:
-        asked = (limit.asked, *(compare.when for compare in limit.compares))
-        yield from (switch.key for switch in asked if switch is not None)
+        yield from (ask.switch.key for ask in limit.asked)
+        yield from (compare.when.key for compare in limit.compares if compare.when is not None)
 
 
 def _asked_keys(derived: Derived) -> Iterator[str]:
@@ -151,7 +174,7 @@ def _asked_keys(derived: Derived) -> Iterator[str]:
 
 
 def _limit_keys(limit: Limit) -> set[str]:
-    keys = {limit.asked.key} if limit.asked else set()
+    keys = {ask.switch.key for ask in limit.asked}
     for compare in limit.compares:
         keys |= {compare.allowed, compare.expected, *compare.only_with}
         keys |= {compare.when.key} if compare.when else set()
@@ -177,7 +200,7 @@ def _misfits(deriveds: tuple[Derived, ...]) -> Iterator[str]:
 
 def _input_misfits(key: str, name: str, source: Input, wanted: Kind, kinds: Mapping[str, Kind]) -> Iterator[str]:
     yield from _unknown_key(f"{key}: {name} comes from", source.key, kinds)
-    offered = NUMBER if source.word else kinds.get(source.key, wanted)
+    offered = NUMBER if source.word is not None else kinds.get(source.key, wanted)
     if offered != wanted:
         yield f"{key}: {name} is a {wanted.name}, {source.key} is a {offered.name}"
 
@@ -207,4 +230,4 @@ def _unknown_key(where: str, key: str, kinds: Mapping[str, Kind]) -> Iterator[st
 def _kinds(deriveds: tuple[Derived, ...]) -> dict[str, Kind]:
     """Kind of every given and result; a choice of words counts as a number, for the use of its words."""
     typed = {key: given.kind or NUMBER for key, given in givens().items()}
-    return {**typed, **HOST, **{derived.key: derived.kind for derived in deriveds}}
+    return {**typed, **HOST, **PAIR_PLACES, **{derived.key: derived.kind for derived in deriveds}}

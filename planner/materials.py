@@ -11,9 +11,6 @@ from typing import Any
 
 from planner.kinds import ENERGY, parse
 
-# Known by name, shipped with a later edition; a plan that asks for one is told so.
-LATER = ("si-sige-60ppm", "si-mos-natural", "si-mos-800ppm", "ge-sige-500ppm", "si-fin-natural")
-
 
 @dataclass(frozen=True, slots=True)
 class Sourced:
@@ -39,7 +36,16 @@ class Nucleus:
     @property
     def moment(self) -> float:
         """w A^2 I (I + 1)/3 in J^2: its part of the variance of the energy, times atoms over spinful fraction."""
-        return self.weight * self.coupling**2 * self.spin * (self.spin + 1) / 3
+        return self._moment(self.coupling)
+
+    @property
+    def moment_ends(self) -> tuple[float, float]:
+        """Its moment with the coupling at either end of the known range; the moment itself where none is known."""
+        low, high = (end or self.source.text for end in (self.source.low, self.source.high))
+        return self._moment(_energy(low)), self._moment(_energy(high))
+
+    def _moment(self, coupling: float) -> float:
+        return self.weight * coupling**2 * self.spin * (self.spin + 1) / 3
 
 
 @dataclass(frozen=True, slots=True)
@@ -107,15 +113,19 @@ def _resolved(name: str) -> dict[str, Any]:
 
 def _nucleus(entry: Mapping[str, Any]) -> Nucleus:
     spin, _ = isotope_fraction(entry["isotope"])
-    coupling = parse(ENERGY, entry["coupling"]).value
-    assert isinstance(coupling, float)
     return Nucleus(
         isotope=entry["isotope"],
         spin=spin,
         weight=float(entry["weight"]),
-        coupling=coupling,
+        coupling=_energy(entry["coupling"]),
         source=_sourced({"text": entry["coupling"], **entry}),
     )
+
+
+def _energy(text: str) -> float:
+    value = parse(ENERGY, text).value
+    assert isinstance(value, float)
+    return value
 
 
 def _sourced(entry: Mapping[str, Any]) -> Sourced:

@@ -238,6 +238,13 @@ def unit_shown(plan: Plan, address: Address) -> str:
     An empty cell shows the unit of the given's example: the first of its kind would make a Rabi frequency of 2 Hz.
     """
     value = resolved(plan, address).value
-    if value is None and address.given.kind is not None:
-        value = read_value(address.given, address.given.example)
+    if value is None:
+        return _unit_of_example(address.table, address.field)
     return value.unit if isinstance(value, Quantity) else ""
+
+
+@cache
+def _unit_of_example(table: str, name: str) -> str:
+    given = table_givens(table)[name]
+    example = read_value(given, given.example) if given.kind is not None else None
+    return example.unit if isinstance(example, Quantity) else ""

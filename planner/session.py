@@ -5,12 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 from pathlib import Path
 
-from planner import planfile
-from planner.chapters.qubit import Qubit
-from planner.plan import Address, Plan, unit_shown, with_rows
+from planner import planfile, records
+from planner.plan import Address, Plan, unit_shown
 from planner.planfile import Document
 from planner.soundness import edited, refuse_new_problems
-from planner.values import read_value
 
 
 @dataclass(frozen=True, slots=True)
@@ -65,24 +63,14 @@ def redone(session: Session) -> Session:
     return replace(session, plan=session.future[0], past=(*session.past, session.plan), future=session.future[1:])
 
 
-def with_qubit(session: Session, name: str, after: int) -> Session:
-    """The session with one more qubit behind row `after`, a copy of it under a new name. Raises GivenError."""
-    rows = session.plan.qubit
-    source = rows[after] if rows else Qubit()
-    row = replace(source, name=str(read_value(Address("qubit", 0, "name").given, name)))
-    return _checked(session, with_rows(session.plan, "qubit", (*rows[: after + 1], row, *rows[after + 1 :])))
+def with_row(session: Session, table: str, after: int, name: str = "") -> Session:
+    """The session with one more record of a table, behind row `after`; see `records.with_row`. Raises GivenError."""
+    return _checked(session, records.with_row(session.plan, table, after, name))
 
 
-def without_qubit(session: Session, index: int) -> Session:
-    """The session without one row of qubits. Raises GivenError where it is the last in use."""
-    rows = session.plan.qubit
-    return _checked(session, with_rows(session.plan, "qubit", (*rows[:index], *rows[index + 1 :])))
-
-
-def free_name(plan: Plan) -> str:
-    """A name for one more qubit: the first of Q1, Q2 ... that is free."""
-    taken = {row.name for row in plan.qubit}
-    return next(name for number in range(1, len(taken) + 2) if (name := f"Q{number}") not in taken)
+def without_row(session: Session, table: str, index: int) -> Session:
+    """The session without one record. Raises GivenError where another rests on it."""
+    return _checked(session, records.without_row(session.plan, table, index))
 
 
 def saved(session: Session, path: Path, *, overwrite: bool = False) -> Session:

@@ -119,8 +119,6 @@ def _choice(given: Given, raw: object) -> str:
     text = raw.strip() if isinstance(raw, str) else None
     if text in given.options:
         return str(text)
-    if text in given.planned:
-        raise GivenError(f"'{text}' comes with a later edition: use one of {words}")
     hint = nearest(text, list(given.options)) if text else ""
     raise GivenError(f"{_shown(raw)} is not one of the choices: use one of {words}{hint}")
 

@@ -191,8 +191,8 @@ def unexplained(evaluation: Evaluation) -> list[str]:
     wrong = []
     for derived in graph().order:
         column = evaluation.columns[derived.key]
-        values = column.base() if not derived.trailing else column.values
-        unknown = np.isnan(values).reshape(len(values), -1).any(axis=1)
+        values = column.base()
+        unknown = np.isnan(values).any(axis=tuple(range(1, values.ndim)))
         if np.isinf(values).any() or {int(row) for row in np.flatnonzero(unknown)} != set(column.why):
             wrong.append(derived.key)
         wrong += [f"{derived.key}: a bound on nothing" for row in column.bound if row in column.why]
@@ -314,7 +314,7 @@ def same_as_one_by_one(key: str, values: list[float], unit: str, base: Mapping[s
     swept = evaluate(plan_of(base), {key: np.array(values)})
     for index, value in enumerate(values):
         text = int(value) if key in ("workload.gates", "workload.refocusing_pulses") else f"{value!r} {unit}".strip()
-        single = evaluate(plan_of({**base, key: text}))
+        single = evaluate(plan_of({**base, key: text}), ranges=False)
         for derived in graph().order:
             one = single.columns[derived.key].values
             column = swept.columns[derived.key].values
@@ -338,7 +338,9 @@ def test_two_sweeps_span_a_grid() -> None:
     plan = plan_of({**second(g="1.9, 2.0, 2.1"), "magnet.rating": None})
     swept = evaluate(plan, {"magnet.field": fields, "magnet.azimuth": azimuths})
     assert swept.columns["noise.total"].values.shape == (3, 2, 2)
-    one = evaluate(plan_of({**second(g="1.9, 2.0, 2.1"), "magnet.field": "0.4 T", "magnet.azimuth": "0.5 rad"}))
+    one = evaluate(
+        plan_of({**second(g="1.9, 2.0, 2.1"), "magnet.field": "0.4 T", "magnet.azimuth": "0.5 rad"}), ranges=False
+    )
     np.testing.assert_allclose(swept.columns["noise.total"].values[1, 1], one.columns["noise.total"].values, rtol=1e-9)
 
 

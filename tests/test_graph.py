@@ -9,7 +9,7 @@ from pathlib import Path
 import pytest
 
 from planner import chapters
-from planner.declare import Bound, Compare, Derived, Form, Input, Limit, Lock, Per, Switch, law, word
+from planner.declare import Ask, Bound, Compare, Derived, Form, Input, Limit, Lock, Switch, law, word
 from planner.graph import CHAPTERS, DERIVEDS, LIMITS, WiringError, build, givens, graph
 from planner.kinds import ANGLE, COUNT, FIELD, FREQUENCY, NUMBER, TIME
 from planner.physics import Array
@@ -236,15 +236,17 @@ def test_margins_have_their_names_and_a_meaning() -> None:
     for declared in LIMITS:
         assert declared.meaning
         assert "\n" not in declared.meaning
-        assert declared.asked is None or declared.not_asked
+        assert all(ask.otherwise for ask in declared.asked)
 
 
 def test_a_margin_of_the_plan_compares_what_a_plan_has_one_of() -> None:
-    per = {derived.key: derived.per for derived in DERIVEDS}
+    """A limit of the plan may also compare coils, each with its own; never one row with one of another table."""
+    per = {derived.key: derived.per.value for derived in DERIVEDS}
     for declared in LIMITS:
-        if declared.per is Per.PLAN:
-            ends = {key for compare in declared.compares for key in (compare.allowed, compare.expected)}
-            assert all(per.get(key, Per.PLAN) is Per.PLAN and not key.startswith("qubit.") for key in ends)
+        for compare in declared.compares:
+            tables = {per.get(key, key.partition(".")[0] if key.startswith(("qubit.", "coil.")) else "")
+                      for key in (compare.allowed, compare.expected)}  # fmt: skip
+            assert len(tables - {""}) <= 1, declared.name
 
 
 # -- every name is checked
@@ -256,7 +258,7 @@ HIDDEN: dict[str, tuple[tuple[Derived, ...], tuple[Limit, ...]]] = {
     "bound": ((Derived("test.tone", tone, {"field": "magnet.field"}, bound=Bound(period, {"frequency": "test.tune"},
         "a note")),), ()),
     "asked": ((FIRST,), (Limit("test", "a limit", (Compare("test.tone", "source.low", FREQUENCY),),
-        asked=Switch("clock.lose", bool)),)),
+        asked=(Ask(Switch("clock.lose", bool), "a reason"),)),)),
     "compared when": ((FIRST,), (Limit("test", "a limit", (Compare("test.tone", "source.low", FREQUENCY,
         when=Switch("clock.lose", bool)),)),)),
     "compared only with": ((FIRST,), (Limit("test", "a limit", (Compare("test.tone", "source.low", FREQUENCY,
@@ -277,14 +279,8 @@ def test_a_switch_on_the_host_depends_on_the_material() -> None:
     assert "chip.material" in graph().upstream["valley.distance"]
 
 
-def test_a_given_for_later_is_used_by_nothing_yet() -> None:
-    assert [key for key in graph().needed if givens()[key].later] == []
-
-
 def test_a_given_that_counts_now_is_used() -> None:
     used = set(graph().needed)
-    silent = {
-        key for key, given in givens().items() if not given.later and key not in used and given.form is Form.QUANTITY
-    }
+    silent = {key for key, given in givens().items() if key not in used and given.form is Form.QUANTITY}
     assert silent == {"format", "cooldown", "wanted_margin"}
     assert ANGLE in {given.kind for given in givens().values()}

@@ -217,8 +217,6 @@ CELLS: dict[str, Cell] = {
         "persistent; did you mean persistent?"),
     "unknown material": Cell("chip.material", "unobtainium",
         "'unobtainium' is not one of the choices: use one of si-sige"),
-    "later material": Cell("chip.material", "si-mos-natural",
-        "'si-mos-natural' comes with a later edition: use one of"),
     "passed": Cell("passed", "lunch", "'lunch' is not one of the choices: use one of none, wafer, bonding, closing"),
     "date": Cell("closing_date", "1 February", "'1 February' is not a date: write year-month-day, as 2027-02-01"),
     "wanted margin": Cell("wanted_margin", "0.9", "'0.9' is out of range"),
@@ -334,7 +332,7 @@ async def misfits(app: Planner, cell: Cell) -> list[str]:
     """What is not as it must be when this text is typed into this cell."""
     table = cell.key.rpartition(".")[0]
     in_rows = table.startswith("qubit.")
-    app.visit("qubits" if in_rows else table)
+    app.visit("qubit" if in_rows else table)
     await settle(app)
     grid = app.desk.qubits if in_rows else app.desk.pane
     if not grid.move_to(cell.key):

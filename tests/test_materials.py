@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import re
 import tomllib
+from dataclasses import replace
 from fractions import Fraction
 from pathlib import Path
 
@@ -11,11 +13,16 @@ import numpy as np
 import pytest
 
 from planner.constants import BOHR_MAGNETON, MICRO_EV
+from planner.evaluate import evaluate
 from planner.kinds import CHARGE_NOISE, COUNT, DISPLACEMENT, FRACTION, RELATIVE_NOISE, Kind, parse
-from planner.materials import LATER, Nucleus, Sourced, edition, isotope_fraction, material, material_titles
+from planner.materials import Nucleus, Sourced, edition, isotope_fraction, material, material_titles
+from planner.physics.nuclei import bath_noise
+from planner.planfile import read
 from planner.references import references
+from tests.planmaking import of
 
-TABLE = tomllib.loads((Path(__file__).parents[1] / "planner" / "data" / "materials.toml").read_text(encoding="utf-8"))
+ROOT = Path(__file__).parents[1]
+TABLE = tomllib.loads((ROOT / "planner" / "data" / "materials.toml").read_text(encoding="utf-8"))
 KIND_OF = {
     "spinful_fraction": FRACTION, "nuclei": COUNT, "barrier_germanium": FRACTION, "barrier_share": FRACTION,
     "barrier_nuclei": COUNT, "barrier_spinful": FRACTION, "charge_noise": CHARGE_NOISE, "displacement": DISPLACEMENT,
@@ -94,8 +101,77 @@ def test_gaas_couplings_make_the_largest_overhauser_field() -> None:
 
 
 def test_moment_of_one_nucleus() -> None:
-    one = Nucleus(isotope="73Ge", spin=4.5, weight=0.5, coupling=2.0, source=every_source()[0][1])
-    assert one.moment == pytest.approx(0.5 * 4 * 4.5 * 5.5 / 3)
+    source = Sourced(text="2 ueV", low="1 ueV", high="3 ueV", reference="memory", status="from memory")
+    one = Nucleus(isotope="73Ge", spin=4.5, weight=0.5, coupling=2 * MICRO_EV, source=source)
+    unit = 0.5 * MICRO_EV**2 * 4.5 * 5.5 / 3
+    assert one.moment == pytest.approx(4 * unit)
+    assert one.moment_ends == pytest.approx((unit, 9 * unit))
+    certain = replace(one, source=replace(source, low=None, high=None))
+    assert certain.moment_ends == pytest.approx((4 * unit, 4 * unit))
+
+
+def t2_star(name: str, *, nuclei: float, fraction: float | None = None) -> float:
+    """sqrt(2) / (2 pi sigma): 1/e time of exp(-(t/T2*)^2) in the material's bath alone, for a hole along its axis, s."""
+    spinful = default(name, "spinful_fraction") if fraction is None else fraction
+    noise = bath_noise(
+        moment=np.array(material(name).moment), spinful_fraction=np.array(spinful), nuclei=np.array(nuclei)
+    )
+    return float(np.sqrt(2) / (2 * np.pi * noise))
+
+
+@pytest.mark.parametrize(
+    ("name", "nuclei", "seconds"),
+    [
+        # sigma^2 = x A^2 I(I+1)/(3 N), computed once outside this package with the CODATA 2022 constants of scipy
+        ("si-sige-natural", 1e5, 0.632539e-6),
+        ("si-mos-natural", 1e5, 0.632539e-6),
+        ("si-sige-800ppm", 1e5, 4.84058e-6),
+        ("si-mos-800ppm", 1e5, 4.84058e-6),
+        ("si-sige-60ppm", 1e5, 17.6753e-6),
+        ("si-sige-60ppm", 4e5, 35.3506e-6),
+        ("si-mos-800ppm", 5e4, 3.42281e-6),
+        ("ge-sige-natural", 1e6, 1.05830e-6),
+        ("gaas", 1e6, 9.38929e-9),
+    ],
+)
+def test_decay_in_the_bath_of_a_material(name: str, nuclei: float, seconds: float) -> None:
+    assert t2_star(name, nuclei=nuclei) == pytest.approx(seconds, rel=1e-5)
+
+
+def test_silicon_of_50_ppm_decays_later() -> None:
+    assert t2_star("si-sige-60ppm", nuclei=1e5, fraction=50e-6) == pytest.approx(19.3623e-6, rel=1e-5)
+
+
+@pytest.mark.parametrize(
+    ("name", "published"),
+    [
+        # A plausible number of nuclei exists for each of these devices; it was not published with them, so a factor of 2
+        # is all that can be asked. Takeda et al. 2021, 1.82, 1.69, 1.69 us; Kawakami et al. 2014, 1 us, and 2016, 0.9 us
+        ("si-sige-natural", 1.69e-6),
+        ("si-sige-natural", 1.0e-6),
+        ("si-sige-natural", 0.9e-6),
+        ("si-fin-natural", 0.4e-6),  # Camenzind et al. 2022, from memory
+    ],
+)
+def test_natural_silicon_decays_as_in_published_devices(name: str, published: float) -> None:
+    assert published / 2 <= t2_star(name, nuclei=default(name, "nuclei")) <= 2 * published
+
+
+def test_purified_hosts_whose_bath_is_of_few_nuclei() -> None:
+    # 40 of 29Si under a MOS dot of 800 ppm (the published case that the formula missed by 35 times), 24 in a 60 ppm well
+    spinful = {name: default(name, "nuclei") * default(name, "spinful_fraction") for name in NAMES}
+    few = {name: count for name, count in spinful.items() if count < 100}
+    assert few == pytest.approx({"si-mos-800ppm": 40, "si-sige-60ppm": 24})
+
+
+@pytest.mark.parametrize("name", NAMES)
+def test_every_material_makes_a_plan(name: str) -> None:
+    text = (ROOT / "plans" / "minimal.toml").read_text("utf-8").replace("si-sige-natural", name)
+    evaluation = evaluate(read(text, "minimal.toml").plan)
+    assert of(evaluation, "noise.nuclear") == pytest.approx(
+        1 / (np.sqrt(2) * np.pi * t2_star(name, nuclei=default(name, "nuclei")))
+    )
+    assert evaluation.margins
 
 
 @pytest.mark.parametrize("name", NAMES)
@@ -124,6 +200,8 @@ def test_natural_hosts_hold_the_natural_fraction() -> None:
     assert default("si-sige-natural", "spinful_fraction") == pytest.approx(isotope_fraction("29Si")[1])
     assert default("ge-sige-natural", "spinful_fraction") == pytest.approx(isotope_fraction("73Ge")[1])
     assert default("si-sige-800ppm", "spinful_fraction") == pytest.approx(800e-6)
+    assert default("si-mos-natural", "spinful_fraction") == pytest.approx(isotope_fraction("29Si")[1])
+    assert default("si-fin-natural", "spinful_fraction") == pytest.approx(isotope_fraction("29Si")[1])
     assert default("gaas", "spinful_fraction") == 1.0
     for name in NAMES:
         assert default(name, "barrier_spinful") == pytest.approx(isotope_fraction("73Ge")[1])
@@ -135,8 +213,24 @@ def test_only_silicon_germanium_wells_have_a_barrier_share() -> None:
 
 
 def test_carriers_and_valleys() -> None:
-    assert {name for name in NAMES if material(name).hole} == {"ge-sige-natural"}
-    assert {name for name in NAMES if material(name).valleys} == {"si-sige-natural", "si-sige-800ppm"}
+    assert {name for name in NAMES if material(name).hole} == {"ge-sige-natural", "ge-sige-500ppm", "si-fin-natural"}
+    with_valleys = {name for name in NAMES if name.startswith(("si-sige-", "si-mos-"))}
+    assert {name for name in NAMES if material(name).valleys} == with_valleys
+
+
+def test_the_shipped_materials_are_those_of_the_readme() -> None:
+    listed = next(
+        bullet for bullet in (ROOT / "README.md").read_text("utf-8").split("\n- ") if "**Materials**" in bullet
+    )
+    assert set(re.findall(r"`([\w-]+)`", listed)) == set(NAMES)
+    assert edition().count(".") == 1
+
+
+def test_the_name_of_a_purified_material_is_its_fraction() -> None:
+    purified = {name: re.search(r"(\d+)ppm", name) for name in NAMES}
+    fractions = {name: float(found[1]) for name, found in purified.items() if found}
+    assert len(fractions) == 4
+    assert {name: default(name, "spinful_fraction") * 1e6 for name in fractions} == pytest.approx(fractions)
 
 
 def atoms(*, mass: float, orbital_mev: float, thickness: float, lattice: float) -> float:
@@ -150,6 +244,7 @@ def atoms(*, mass: float, orbital_mev: float, thickness: float, lattice: float) 
     [
         # effective masses and sizes from memory; lattice constants 0.5431, 0.5658, 0.5653 nm from memory (any handbook)
         ("si-sige-natural", 0.19, 0.5431, (1.0, 2.0), (5.0, 8.0)),
+        ("si-mos-natural", 0.19, 0.5431, (4.0, 8.0), (4.0, 4.0)),
         ("ge-sige-natural", 0.06, 0.5658, (1.0, 2.0), (16.0, 20.0)),
         ("gaas", 0.067, 0.5653, (1.0, 2.0), (10.0, 10.0)),
     ],
@@ -162,8 +257,6 @@ def test_default_number_of_nuclei_is_that_of_a_plausible_dot(
     assert few <= default(name, "nuclei") <= many
 
 
-def test_materials_of_a_later_edition_are_named_but_not_shipped() -> None:
-    assert not set(LATER) & set(NAMES)
-    assert edition().count(".") == 1
+def test_a_material_that_is_not_shipped_is_refused() -> None:
     with pytest.raises(KeyError):
-        material(LATER[0])
+        material("unobtainium")

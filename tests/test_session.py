@@ -13,7 +13,7 @@ from planner import session as sessions
 from planner.kinds import Quantity
 from planner.plan import Address, Plan, address_of, stated
 from planner.planfile import ChangedOnDisk, Document, load
-from planner.session import Session, free_name, opened, redone, saved, typed, undone, with_qubit, without_qubit
+from planner.session import Session, opened, redone, saved, typed, undone, with_row, without_row
 from planner.values import GivenError
 from tests.planmaking import BENCH, Entry, plan_of, second, text_of
 
@@ -151,7 +151,7 @@ def test_steps_are_those_of_a_list_with_a_place_in_it(edits: list[str | tuple[st
 
 
 def test_a_new_qubit_is_a_copy_of_the_one_above() -> None:
-    session = with_qubit(session_of({**second()}), " left ", 0)
+    session = with_row(session_of({**second()}), "qubit", 0, " left ")
     first, new, last = session.plan.qubit
     assert (first.name, new.name, last.name) == ("Q1", "left", "Q2")
     assert replace(new, name="Q1") == first
@@ -165,24 +165,18 @@ def test_a_new_qubit_is_a_copy_of_the_one_above() -> None:
 def test_a_new_qubit_needs_a_name_of_its_own(name: str, sentence: str) -> None:
     session = session_of()
     with pytest.raises(GivenError, match=sentence.replace("(", r"\(")):
-        with_qubit(session, name, 0)
+        with_row(session, "qubit", 0, name)
     assert session == session_of()
 
 
 def test_a_qubit_is_removed_but_not_the_last_in_use() -> None:
-    session = without_qubit(session_of({**second(), **second("Q3", role="spare")}), 0)
+    session = without_row(session_of({**second(), **second("Q3", role="spare")}), "qubit", 0)
     assert [row.name for row in session.plan.qubit] == ["Q2", "Q3"]
     with pytest.raises(GivenError, match="no qubit is in use"):
-        without_qubit(session, 0)
+        without_row(session, "qubit", 0)
     alone = session_of()
     with pytest.raises(GivenError, match="at least one"):
-        without_qubit(alone, 0)
-
-
-def test_the_free_name_is_the_first_of_its_row() -> None:
-    assert free_name(session_of().plan) == "Q2"
-    assert free_name(session_of({**second("Q3")}).plan) == "Q2"
-    assert free_name(session_of({**second("Q2"), **second("left")}).plan) == "Q3"
+        without_row(alone, "qubit", 0)
 
 
 # -- saving

@@ -4,9 +4,9 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from planner.declare import Chapter, Compare, Derived, Limit, Lock, Missing, Nature, Per, Typed, given
+from planner.declare import Chapter, Compare, Derived, Limit, Lock, Missing, Nature, Per, Typed, given, word
 from planner.kinds import COUNT, FRACTION, FREQUENCY, TIME
-from planner.physics import dephasing, gates
+from planner.physics import addressing, dephasing, gates
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -88,7 +88,6 @@ class Calibration(Chapter):
         most=1,
         example="5 %",
         sensible="1 to 20 %",
-        later=True,
     )
 
 
@@ -113,9 +112,29 @@ DERIVEDS = (
         per=Per.PLAN,
         shown=False,
     ),
+    Derived(
+        "calibration.time_share",
+        addressing.time_share,
+        {
+            "in_use": word("qubit.role", "use"),
+            "shots": "calibration.shots",
+            "shot_time": "calibration.shot_time",
+            "wait": "calibration.wait",
+            "interval": "calibration.interval",
+        },
+        per=Per.PLAN,
+        help="share of the time that calibrating every qubit in use takes",
+    ),
 )
 
 LIMITS = (
+    Limit(
+        "calibration-time",
+        "calibrating every qubit in use takes no more than its share of the time",
+        (Compare("calibration.allowed_time_share", "calibration.time_share", FRACTION),),
+        per=Per.PLAN,
+        quiet=True,
+    ),
     Limit(
         "calibration",
         "the calibration's own precision stays within one source's share of the allowed noise",

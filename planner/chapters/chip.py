@@ -4,9 +4,11 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from planner.declare import Chapter, Form, Lock, Missing, Nature, Typed, Word, given
+from planner.declare import Ask, Chapter, Compare, Derived, Form, Limit, Lock, Missing, Nature, Per, Typed, Word, given
 from planner.kinds import FIELD, FRACTION, NUMBER, TEMPERATURE
-from planner.materials import LATER, material_titles
+from planner.materials import material_titles
+from planner.physics import wiring
+from planner.switches import HAS_MICROMAGNET
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -20,7 +22,6 @@ class Chip(Chapter):
         locks=Lock.WAFER,
         missing=Missing.REQUIRED,
         options=material_titles(),
-        planned=LATER,
         example="si-sige-800ppm",
     )
     electron_temperature: Typed = given(
@@ -43,7 +44,6 @@ class Chip(Chapter):
         most=1,
         example="0.1",
         sensible="0.01 to 1",
-        later=True,
     )
     micromagnet_field: Typed = given(
         FIELD,
@@ -53,7 +53,6 @@ class Chip(Chapter):
         above=0,
         example="250 mT",
         sensible="100 to 500 mT",
-        later=True,
     )
     micromagnet_axis: Typed = given(
         NUMBER,
@@ -64,9 +63,32 @@ class Chip(Chapter):
         sizes=(3,),
         nonzero=True,
         example="1, 0, 0",
-        later=True,
     )
 
 
-DERIVEDS = ()
-LIMITS = ()
+DERIVEDS = (
+    Derived(
+        "chip.field_along_axis",
+        wiring.field_along,
+        {"set_vector": "larmor.set_vector", "axis": "chip.micromagnet_axis"},
+        per=Per.PLAN,
+        shown=False,
+    ),
+)
+
+LIMITS = (
+    Limit(
+        "micromagnet",
+        "the set field along the micromagnet's easy axis keeps its state repeatable",
+        (
+            Compare(
+                "chip.field_along_axis",
+                "chip.micromagnet_field",
+                FIELD,
+                gap="{allowed} {unit} along it, {expected} needed",
+            ),
+        ),
+        per=Per.PLAN,
+        asked=(Ask(HAS_MICROMAGNET, "no micromagnet field is stated"),),
+    ),
+)

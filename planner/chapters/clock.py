@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from planner.declare import (
+    Ask,
     Bound,
     Chapter,
     Compare,
@@ -23,9 +24,9 @@ from planner.declare import (
     optional,
     word,
 )
-from planner.kinds import DRIFT, FRACTION, FREQUENCY
-from planner.physics import clock, tones
-from planner.switches import IS_LOOSE
+from planner.kinds import ANGLE, DRIFT, FRACTION, FREQUENCY
+from planner.physics import clock, phasenoise, tones
+from planner.switches import HAS_PHASE_NOISE, IS_LOOSE
 
 LOOSE = {
     "none": "every instrument is locked to the one reference",
@@ -95,6 +96,14 @@ class Clock(Chapter):
     )
 
 
+_PHASE_NOISE = {
+    "offset": "phase_noise.offset",
+    "level": "phase_noise.level",
+    "carrier": "phase_noise.carrier",
+    "frequency": "larmor.frequency",
+}
+_ONE_POINT = Unknown("phase noise is stated at one offset only: two or more make a spectrum")
+
 DERIVEDS = (
     Derived(
         "clock.deviation_100s",
@@ -142,7 +151,7 @@ DERIVEDS = (
             "allowed_noise": "coherence.allowed_noise",
             "frequency": "larmor.frequency",
         },
-        help="largest fractional change of the reference between calibration and run; a constant offset cancels",
+        help="a constant offset cancels; largest fractional change of the reference between calibration and run",
     ),
     Derived(
         "clock.change",
@@ -204,6 +213,33 @@ DERIVEDS = (
         unknown=Unknown("the loose tone is at 0 Hz: nothing of it can shift"),
         help="largest fractional change of the loose instrument between two calibrations",
     ),
+    Derived(
+        "clock.source_phase",
+        phasenoise.source_phase,
+        {**_PHASE_NOISE, "time": "workload.longest_wait"},
+        only=HAS_PHASE_NOISE,
+        off=Unknown("no phase noise is stated", "phase_noise.offset"),
+        unknown=_ONE_POINT,
+        heading="source ph",
+        display="rad",
+        help="rms phase of the source's phase noise over the longest wait",
+    ),
+    Derived(
+        "clock.sequence_phase",
+        phasenoise.source_phase,
+        {**_PHASE_NOISE, "time": "coherence.sequence_time"},
+        only=HAS_PHASE_NOISE,
+        off=Unknown("no phase noise is stated"),
+        unknown=_ONE_POINT,
+        shown=False,
+    ),
+    Derived(
+        "clock.allowed_phase",
+        phasenoise.allowed_source_phase,
+        {"source_share": "workload.source_share", "allowed_sequence_error": "workload.allowed_sequence_error"},
+        per=Per.PLAN,
+        shown=False,
+    ),
 )
 
 LIMITS = (
@@ -213,13 +249,19 @@ LIMITS = (
         (
             Compare("clock.required_accuracy", "clock.change", FRACTION, what="change since calibration"),
             Compare("clock.required_stability", "clock.stability", FRACTION, what="Allan deviation over the sequence"),
+            Compare(
+                "clock.allowed_phase",
+                "clock.sequence_phase",
+                ANGLE,
+                only_with=("clock.sequence_phase",),
+                what="phase noise over the sequence",
+            ),
         ),
     ),
     Limit(
         "loose-clock",
         "the instrument on its own clock stays within one source's share of the allowed noise",
         (Compare("noise.allowed_share", "noise.loose", FREQUENCY),),
-        asked=IS_LOOSE,
-        not_asked="everything is locked",
+        asked=(Ask(IS_LOOSE, "everything is locked"),),
     ),
 )

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from planner.declare import Compare, Derived, Input, Limit, Unknown, optional, word
 from planner.kinds import ANGLE, FRACTION, NUMBER
-from planner.physics import dephasing, gates, noise
+from planner.physics import dephasing, exchange, gates, noise
 from planner.switches import ALIGNED, FREE, RANDOMISED, REFOCUSED
 
 _MEASURED = "qubit.t2_star"
@@ -118,7 +118,7 @@ DERIVEDS = (
     Derived(
         "coherence.gates_randomised",
         gates.gates_randomised,
-        {"error": "coherence.error_per_gate", "allowed": "workload.allowed_sequence_error"},
+        {"error": "coherence.error_per_gate", "allowed": "pair.error_left"},
         heading="random.",
         unknown=_UNLIMITED,
         help="gates within the allowed sequence error when errors add at random",
@@ -134,7 +134,7 @@ DERIVEDS = (
             "density": "noise.white_density",
             "lowest": "calibration.lowest",
             "pulses": "workload.refocusing_pulses",
-            "allowed": "workload.allowed_sequence_error",
+            "allowed": "pair.error_left",
             "gate_time": "workload.gate_time",
             "idle": "workload.idle_per_gate",
         },
@@ -143,7 +143,7 @@ DERIVEDS = (
         help="gates within the allowed sequence error when errors add up in phase",
     ),
     Derived(
-        "coherence.sequence_error",
+        "coherence.single_error",
         gates.sequence_error,
         {
             "error": Input("coherence.error_per_gate", when=(RANDOMISED,)),
@@ -158,8 +158,14 @@ DERIVEDS = (
             "pulses": "workload.refocusing_pulses",
             "sequence_time": "coherence.sequence_time",
         },
+        shown=False,
+    ),
+    Derived(
+        "coherence.sequence_error",
+        exchange.composed_error,
+        {"single": "coherence.single_error", "exchange": "pair.share"},
         heading="seq. err",
-        help="error of the whole circuit",
+        help="error of the whole circuit, exchange gates included",
     ),
     Derived(
         "coherence.reachable_gates",

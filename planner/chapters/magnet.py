@@ -18,6 +18,7 @@ from planner.declare import (
     Nature,
     Per,
     Typed,
+    Unknown,
     Word,
     given,
     law,
@@ -214,12 +215,18 @@ DERIVEDS = (
     ),
 )
 
+_RATED = "{expected} of {allowed} {unit} rated"
+
 LIMITS = (
     Limit(
         "rating",
-        "the set field stays within the magnet's rating in the direction used",
-        (Compare("magnet.rating", "magnet.field", FIELD, gap="{expected} of {allowed} {unit} rated"),),
+        "the set field stays within the magnet's rating in the direction used, and each coil within its own",
+        (
+            Compare("magnet.rating", "magnet.field", FIELD, only_with=("magnet.rating",), gap=_RATED),
+            Compare("coil.rating", "coil.size", FIELD, only_with=("coil.rating",), what="coil", gap=_RATED),
+        ),
         per=Per.PLAN,
+        none_made=Unknown("is not typed", "magnet.rating"),
         tight_counts=False,
     ),
     Limit(

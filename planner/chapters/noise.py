@@ -5,11 +5,21 @@ A new noise source is one law, one line here and one argument of `static_noise`.
 
 from __future__ import annotations
 
-from planner.declare import Bound, Derived, Input, Unknown, optional
-from planner.physics import dephasing, noise, nuclei, zeeman
+from collections.abc import Mapping
+
+from planner.declare import Bound, Derived, Input, Unknown, optional, word
+from planner.physics import coils, dephasing, noise, nuclei
 from planner.switches import IS_LOOSE
 
 _MEASURED = "qubit.t2_star"
+_DRIFTED: Mapping[str, str | Input] = {
+    "field_response": "larmor.response",
+    "field_slope": "larmor.field_slope",
+    "field": "magnet.field",
+    "interval": "calibration.interval",
+    "direction": optional("coil.unit"),
+    "coil_field": optional("coil.field"),
+}
 _NO_T2_STAR = Unknown("no measured T2* is typed", _MEASURED)
 
 DERIVEDS = (
@@ -41,6 +51,7 @@ DERIVEDS = (
                 "t2_star": _MEASURED,
             },
             "few nuclei: the bath formula is only an upper bound, type nuclear_noise or t2_star first",
+            least=1 / 30,
         ),
         help="slow rms of the well's nuclear spins",
     ),
@@ -66,26 +77,46 @@ DERIVEDS = (
     ),
     Derived(
         "noise.magnet",
-        zeeman.vector_uncertainty,
-        {"field_response": "larmor.response", "uncertainty": "magnet.noise"},
+        coils.magnet_noise,
+        {
+            "field_response": "larmor.response",
+            "noise": "magnet.noise",
+            "direction": optional("coil.unit"),
+            "is_off": word("coil.mode", "off"),
+            "coil_noise": optional("coil.noise"),
+        },
         heading="magnet",
         display="kHz",
-        help="slow rms from the magnet's field noise",
+        help="slow rms from the magnet's field noise, of its running coils where they are stated",
+    ),
+    Derived(
+        "noise.drift_own",
+        coils.drifted,
+        {**_DRIFTED, "rate": "magnet.drift", "coil_rate": optional("coil.drift")},
+        shown=False,
+    ),
+    Derived(
+        "noise.drift_settling",
+        coils.drifted,
+        {**_DRIFTED, "rate": "magnet.settle_slope", "coil_rate": optional("coil.settle")},
+        shown=False,
     ),
     Derived(
         "noise.drift",
-        noise.drift_noise,
-        {
-            "field_slope": "larmor.field_slope",
-            "field": "magnet.field",
-            "drift": "magnet.drift",
-            "settle_slope": "magnet.settle_slope",
-            "since_ramp": optional("magnet.since_ramp"),
-            "interval": "calibration.interval",
-        },
+        coils.drift_after_ramp,
+        {"own": "noise.drift_own", "settling": "noise.drift_settling", "since_ramp": optional("magnet.since_ramp")},
         heading="drift",
         display="kHz",
         help="frequency change by the magnet's drift over one calibration interval",
+    ),
+    Derived(
+        "magnet.settling",
+        coils.settling_time,
+        {"own": "noise.drift_own", "settling": "noise.drift_settling", "allowed": "noise.allowed_share"},
+        heading="settle",
+        display="h",
+        unknown=Unknown("the drift of the mode alone is too much: no wait helps", "magnet.mode"),
+        help="time after a ramp at which the drift is within its share; 0 where it is one hour after",
     ),
     Derived(
         "noise.calibration",

@@ -34,7 +34,7 @@ MUST = {"any": "no matter", "superconduct": "must stay superconducting", "be nor
 class Coil(Chapter):
     """One coil of the magnet, directions in the chip frame with the mount's tilt included."""
 
-    name: Word = given(Form.TEXT, "name of the coil", Nature.FACT, missing=Missing.REQUIRED, example="z", later=True)
+    name: Word = given(Form.TEXT, "name of the coil", Nature.FACT, missing=Missing.REQUIRED, example="z")
     direction: Typed = given(
         NUMBER,
         "direction of its field in the chip frame, of any length",
@@ -43,10 +43,9 @@ class Coil(Chapter):
         sizes=(3,),
         nonzero=True,
         example="1, 0, 0.014",
-        later=True,
     )
     rating: Typed = given(
-        FIELD, "largest field of this coil", Nature.CHOICE, locks=Lock.CLOSING, above=0, example="6 T", later=True
+        FIELD, "largest field of this coil", Nature.CHOICE, locks=Lock.CLOSING, above=0, example="6 T"
     )
     field_per_current: Typed = given(
         FIELD_PER_CURRENT,
@@ -54,7 +53,6 @@ class Coil(Chapter):
         Nature.CHOICE,
         locks=Lock.CLOSING,
         example="70 mT/A",
-        later=True,
     )
     step: Typed = given(
         CURRENT,
@@ -64,7 +62,6 @@ class Coil(Chapter):
         missing=Missing.OFF,
         above=0,
         example="0.1 mA",
-        later=True,
     )
     mode: Word = given(
         Form.CHOICE,
@@ -74,7 +71,6 @@ class Coil(Chapter):
         missing=Missing.OFF,
         options=COIL_MODES,
         example="off",
-        later=True,
     )
 
 
@@ -82,15 +78,11 @@ class Coil(Chapter):
 class Pair(Chapter):
     """Two qubits with an exchange gate."""
 
-    name: Word = given(Form.TEXT, "name of the pair", Nature.FACT, missing=Missing.REQUIRED, example="Q1Q2", later=True)
-    first: Word = given(
-        Form.TEXT, "name of its first qubit", Nature.FACT, missing=Missing.REQUIRED, example="Q1", later=True
-    )
-    second: Word = given(
-        Form.TEXT, "name of its second qubit", Nature.FACT, missing=Missing.REQUIRED, example="Q2", later=True
-    )
+    name: Word = given(Form.TEXT, "name of the pair", Nature.FACT, missing=Missing.REQUIRED, example="Q1Q2")
+    first: Word = given(Form.TEXT, "name of its first qubit", Nature.FACT, missing=Missing.REQUIRED, example="Q1")
+    second: Word = given(Form.TEXT, "name of its second qubit", Nature.FACT, missing=Missing.REQUIRED, example="Q2")
     exchange: Typed = given(
-        FREQUENCY, "exchange at the working point", Nature.CHOICE, locks=Lock.OPEN, above=0, example="5 MHz", later=True
+        FREQUENCY, "exchange at the working point", Nature.CHOICE, locks=Lock.OPEN, above=0, example="5 MHz"
     )
     exchange_noise: Typed = given(
         FREQUENCY_NOISE,
@@ -98,7 +90,6 @@ class Pair(Chapter):
         Nature.FACT,
         least=0,
         example="20 kHz/rtHz",
-        later=True,
     )
     residual_exchange: Typed = given(
         FREQUENCY,
@@ -108,10 +99,9 @@ class Pair(Chapter):
         default="0 Hz",
         least=0,
         example="10 kHz",
-        later=True,
     )
     gate_time: Typed = given(
-        TIME, "duration of one exchange gate", Nature.CHOICE, locks=Lock.OPEN, above=0, example="100 ns", later=True
+        TIME, "duration of one exchange gate", Nature.CHOICE, locks=Lock.OPEN, above=0, example="100 ns"
     )
 
 
@@ -126,7 +116,6 @@ class PhaseNoise(Chapter):
         missing=Missing.REQUIRED,
         above=0,
         example="1 kHz",
-        later=True,
     )
     level: Typed = given(
         PHASE_LEVEL,
@@ -134,7 +123,6 @@ class PhaseNoise(Chapter):
         Nature.FACT,
         missing=Missing.REQUIRED,
         example="-92 dBc/Hz",
-        later=True,
     )
     carrier: Typed = given(
         FREQUENCY,
@@ -143,7 +131,6 @@ class PhaseNoise(Chapter):
         missing=Missing.REQUIRED,
         above=0,
         example="10 GHz",
-        later=True,
     )
 
 
@@ -151,27 +138,17 @@ class PhaseNoise(Chapter):
 class Stage(Chapter):
     """One temperature stage of the cryostat, listed from warm to cold."""
 
-    name: Word = given(
-        Form.TEXT, "name of the stage", Nature.FACT, missing=Missing.REQUIRED, example="mixing chamber", later=True
-    )
-    temperature: Typed = given(
-        TEMPERATURE, "working temperature", Nature.FACT, above=0, most=400, example="18 mK", later=True
-    )
-    cooling_power: Typed = given(
-        POWER, "cooling power at that temperature", Nature.FACT, above=0, example="12 uW", later=True
-    )
-    base_load: Typed = given(
-        POWER, "heat that is there without any drive", Nature.FACT, least=0, example="2 uW; guess", later=True
-    )
+    name: Word = given(Form.TEXT, "name of the stage", Nature.FACT, missing=Missing.REQUIRED, example="mixing chamber")
+    temperature: Typed = given(TEMPERATURE, "working temperature", Nature.FACT, above=0, most=400, example="18 mK")
+    cooling_power: Typed = given(POWER, "cooling power at that temperature", Nature.FACT, above=0, example="12 uW")
+    base_load: Typed = given(POWER, "heat that is there without any drive", Nature.FACT, least=0, example="2 uW; guess")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Line(Chapter):
     """One kind of line and its attenuators, stage by stage."""
 
-    name: Word = given(
-        Form.TEXT, "name of the line", Nature.FACT, missing=Missing.REQUIRED, example="drive", later=True
-    )
+    name: Word = given(Form.TEXT, "name of the line", Nature.FACT, missing=Missing.REQUIRED, example="drive")
     type: Word = given(
         Form.CHOICE,
         "kind of line",
@@ -181,7 +158,6 @@ class Line(Chapter):
         default="coax",
         options=LINE_TYPES,
         example="dc",
-        later=True,
     )
     count: Typed = given(
         COUNT,
@@ -193,7 +169,6 @@ class Line(Chapter):
         least=1,
         most=1e6,
         example="13",
-        later=True,
     )
     attenuation: Typed = given(
         RATIO,
@@ -203,7 +178,6 @@ class Line(Chapter):
         per_stage=True,
         locks=Lock.CLOSING,
         example="0, 20, 0, 6, 3 dB",
-        later=True,
     )
     cable_loss: Typed = given(
         RATIO,
@@ -213,7 +187,6 @@ class Line(Chapter):
         default="0 dB",
         least=1,
         example="9 dB",
-        later=True,
     )
     source_temperature: Typed = given(
         TEMPERATURE,
@@ -223,7 +196,6 @@ class Line(Chapter):
         default="300 K",
         above=0,
         example="300 K",
-        later=True,
     )
     device_power: Typed = given(
         POWER,
@@ -233,7 +205,6 @@ class Line(Chapter):
         missing=Missing.OFF,
         above=0,
         example="-27 dBm",
-        later=True,
     )
     duty: Typed = given(
         FRACTION,
@@ -245,7 +216,6 @@ class Line(Chapter):
         above=0,
         most=1,
         example="0.15",
-        later=True,
     )
 
 
@@ -253,14 +223,10 @@ class Line(Chapter):
 class Part(Chapter):
     """A superconducting part near the chip."""
 
-    name: Word = given(
-        Form.TEXT, "name of the part", Nature.FACT, missing=Missing.REQUIRED, example="readout inductor", later=True
-    )
-    critical_in_plane: Typed = given(
-        FIELD, "critical field in the chip plane", Nature.FACT, above=0, example="2 T", later=True
-    )
+    name: Word = given(Form.TEXT, "name of the part", Nature.FACT, missing=Missing.REQUIRED, example="readout inductor")
+    critical_in_plane: Typed = given(FIELD, "critical field in the chip plane", Nature.FACT, above=0, example="2 T")
     critical_normal: Typed = given(
-        FIELD, "critical field along the chip normal", Nature.FACT, above=0, example="100 mT", later=True
+        FIELD, "critical field along the chip normal", Nature.FACT, above=0, example="100 mT"
     )
     must: Word = given(
         Form.CHOICE,
@@ -270,5 +236,4 @@ class Part(Chapter):
         default="any",
         options=MUST,
         example="superconduct",
-        later=True,
     )

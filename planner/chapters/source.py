@@ -71,7 +71,6 @@ class Source(Chapter):
         below=1,
         example="-40 dB",
         sensible="-70 to -30 dB",
-        later=True,
     )
     leakage: Typed = given(
         RATIO,
@@ -82,7 +81,6 @@ class Source(Chapter):
         below=1,
         example="-40 dB",
         sensible="-70 to -30 dB",
-        later=True,
     )
     power: Typed = given(
         POWER,
@@ -92,7 +90,6 @@ class Source(Chapter):
         above=0,
         example="16 dBm",
         sensible="0 to 20 dBm",
-        later=True,
     )
 
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from planner.declare import Compare, Derived, Limit, Unknown
+from planner.declare import Ask, Compare, Derived, Limit, Unknown
 from planner.kinds import ENERGY
 from planner.physics import thermal
 from planner.switches import HAS_VALLEYS
@@ -25,7 +25,6 @@ LIMITS = (
         "valley",
         "Zeeman energy and valley splitting keep their distance",
         (Compare("valley.distance", "workload.valley_window", ENERGY, gap="gap {allowed} of {expected} {unit}"),),
-        asked=HAS_VALLEYS,
-        not_asked="the host has no valleys",
+        asked=(Ask(HAS_VALLEYS, "the host has no valleys"),),
     ),
 )

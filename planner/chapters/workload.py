@@ -203,7 +203,6 @@ class Workload(Chapter):
         below=0.5,
         example="1e-3",
         sensible="1e-4 to 1e-2",
-        later=True,
     )
     exchange_gates: Typed = given(
         COUNT,
@@ -214,7 +213,6 @@ class Workload(Chapter):
         least=0,
         most=1e12,
         example="20",
-        later=True,
     )
     allowed_pair_error: Typed = given(
         FRACTION,
@@ -226,7 +224,6 @@ class Workload(Chapter):
         below=0.5,
         example="1e-2",
         sensible="1e-3 to 0.1",
-        later=True,
     )
 
 

@@ -33,7 +33,11 @@ def white_fm(*, deviation_1s: Array, deviation_100s: Array) -> Array:
     white=FRACTION,
 )
 def flicker_fm(*, deviation_1s: Array, deviation_100s: Array, white: Array) -> Array:
-    """F: flicker floor of the Allan deviation, from the same two equations; below 3e-5 of s1 it counts as none."""
+    """F: flicker floor of the Allan deviation, from the same two equations; below 3e-5 of s1 it counts as none.
+
+    Formula: sqrt(deviation_100s**2 - white**2 / 100 if deviation_100s**2 - white**2 / 100 >= 1e-9 * deviation_1s**2
+    else 0)
+    """
     squared = np.maximum(0.0, deviation_100s**2 - white**2 / 100)
     return np.sqrt(np.where(squared < 1e-9 * deviation_1s**2, 0.0, squared))
 
@@ -46,7 +50,10 @@ def tenth(*, deviation_1s: Array) -> Array:
 
 @law(TIME, sequence_time=TIME, longest_wait=TIME, shot_time=TIME)
 def run_time(*, sequence_time: Array, longest_wait: Array, shot_time: Array) -> Array:
-    """Length of the run that the clock must survive: the sequence, else the longest wait, else a shot."""
+    """Length of the run that the clock must survive: the sequence, else the longest wait, else a shot.
+
+    Formula: known(sequence_time, longest_wait, shot_time)
+    """
     waited = np.where(np.isnan(longest_wait), shot_time, longest_wait)
     return np.where(np.isnan(sequence_time), waited, sequence_time)
 
@@ -73,6 +80,9 @@ def clock_change(*, white: Array, flicker: Array, aging: Array, run: Array, gap:
 
     White FM of the calibration's average, flicker FM of both averages, and ageing, which adds coherently. White FM of the
     run itself is what `required_stability` judges.
+
+    Formula: none; sqrt(w^2/averaging + F^2 V) + aging (run/2 + gap + averaging/2), V the variance of the difference
+    of two means of flicker FM, by Gauss over the shorter one.
     """
     random = np.sqrt(white**2 / averaging + flicker**2 * flicker_variance(run=run, gap=gap, averaging=averaging))
     return random + aging * (run / 2 + gap + averaging / 2)
@@ -80,7 +90,10 @@ def clock_change(*, white: Array, flicker: Array, aging: Array, run: Array, gap:
 
 @law(FRACTION, source_share=FRACTION, allowed_noise=FREQUENCY, frequency=FREQUENCY)
 def required_accuracy(*, source_share: Array, allowed_noise: Array, frequency: Array) -> Array:
-    """Largest fractional change of a tone that keeps its share of the allowed noise."""
+    """Largest fractional change of a tone between calibration and run that keeps its share of the allowed noise.
+
+    A constant offset y turns f into f/(1 + y) in the calibration and in every later phase alike, and so cancels exactly.
+    """
     return source_share * allowed_noise / frequency
 
 
@@ -96,7 +109,11 @@ def required_accuracy(*, source_share: Array, allowed_noise: Array, frequency: A
 def required_stability(
     *, source_share: Array, frequency: Array, sequence_time: Array, allowed_sequence_error: Array
 ) -> Array:
-    """Allan deviation at the sequence's length at which the clock takes its share of the phase that the sequence allows."""
+    """Allan deviation at the sequence's length at which the clock takes its share of the phase that the sequence allows.
+
+    Formula: source_share * sqrt(-2 * log(1 - 3 * allowed_sequence_error)) / (2 * pi * frequency * sequence_time *
+    sqrt(2))
+    """
     phase = np.sqrt(-2 * np.log1p(-3 * allowed_sequence_error))
     return source_share * phase / (2 * np.pi * frequency * sequence_time * np.sqrt(2))
 

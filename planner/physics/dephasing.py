@@ -38,7 +38,11 @@ def lowest_frequency(*, time: Array) -> Array:
     time=TIME,
 )
 def flicker_rms(*, amplitude: Array, lowest: Array, time: Array) -> Array:
-    """Static rms that dephases as much as free 1/f noise after `time`: sqrt(2 chi)/(2 pi t) = A sqrt(2 J(2 pi f_l t))."""
+    """Static rms that dephases as much as free 1/f noise after `time`: sqrt(2 chi)/(2 pi t) = A sqrt(2 J(2 pi f_l t)).
+
+    Formula: none; A sqrt(2 J(2 pi f_l t)), J(z) the integral of (1 - cos u)/u^3 from z on, by its series and
+    auxiliary functions.
+    """
     return amplitude * np.sqrt(2 * flicker_integral(2 * np.pi * lowest * time))
 
 
@@ -72,7 +76,11 @@ def static_noise(
     clock: Array,
     loose: Array,
 ) -> Array:
-    """Root-sum-square of what stays put over one sequence; a measured T2* stands for nuclei, barrier and magnet."""
+    """Root-sum-square of what stays put over one sequence; a measured T2* stands for nuclei, barrier and magnet.
+
+    Formula: sqrt((nuclear**2 + barrier**2 + magnet**2 if unknown(measured_t2_star) else 1 / (sqrt(2) * pi *
+    measured_t2_star)**2) + drift**2 + calibration**2 + clock**2 + loose**2)
+    """
     bath = np.where(
         np.isnan(measured_t2_star), nuclear**2 + barrier**2 + magnet**2, rms_of_t2_star(measured_t2_star) ** 2
     )
@@ -102,7 +110,10 @@ def free_white(*, density: Array, measured_t2_star: Array) -> Array:
     time=TIME,
 )
 def total_noise(*, static: Array, amplitude: Array, density: Array, lowest: Array, time: Array) -> Array:
-    """Root-sum-square of the static noise and of what 1/f and white noise do over `time`."""
+    """Root-sum-square of the static noise and of what 1/f and white noise do over `time`.
+
+    Formula: none; sqrt(static^2 + 2 A^2 J(2 pi f_l t) + S/(2 t)), J(z) the integral of (1 - cos u)/u^3 from z on.
+    """
     flicker = flicker_rms(amplitude=amplitude, lowest=lowest, time=time)
     return np.sqrt(static**2 + flicker**2 + white_rms(density=density, time=time) ** 2)
 
@@ -122,7 +133,12 @@ def total_noise(*, static: Array, amplitude: Array, density: Array, lowest: Arra
 def t2_star(
     *, nuclear: Array, barrier: Array, magnet: Array, amplitude: Array, density: Array, lowest: Array, measured: Array
 ) -> Array:
-    """T2*: measured, else the time at which chi of nuclei, barrier, magnet, charge and white noise is 1; nan if never."""
+    """T2*: measured, else the time at which chi of nuclei, barrier, magnet, charge and white noise is 1; nan if never.
+
+    Formula: none; where none is measured, the root t of (2 pi t)^2 (s^2/2 + A^2 J(2 pi f_l t)) + pi^2 S t = 1 by
+    Newton, s^2 the sum of the squares of nuclei, barrier and magnet, J(z) the integral of (1 - cos u)/u^3 from z
+    on.
+    """
     static = np.sqrt(nuclear**2 + barrier**2 + magnet**2)
     model = time_of_chi(chi=np.asarray(1.0), static=static, amplitude=amplitude, density=density, lowest=lowest)
     return np.where(np.isnan(measured), model, measured)
@@ -136,7 +152,11 @@ def t2_star(
     density=WHITE_NOISE,
 )
 def t2_echo(*, amplitude: Array, density: Array) -> Array:
-    """1/e time after one refocusing pulse: chi = (2 pi A t)^2 ln(2)/2 + pi^2 S t = 1; nan where there is no such noise."""
+    """1/e time after one refocusing pulse: chi = (2 pi A t)^2 ln(2)/2 + pi^2 S t = 1; nan where there is no such noise.
+
+    Formula: nan if amplitude + density == 0 else 1 / (pi**2 * density / 2 + sqrt((pi**2 * density / 2)**2 + 2 * (pi
+    * amplitude)**2 * log(2)))
+    """
     return refocused_time(chi=np.asarray(1.0), amplitude=amplitude, density=density, pulses=np.asarray(1.0))
 
 
@@ -151,7 +171,11 @@ def t2_echo(*, amplitude: Array, density: Array) -> Array:
     pulses=COUNT,
 )
 def wait_phase(*, total: Array, amplitude: Array, density: Array, wait: Array, pulses: Array) -> Array:
-    """Rms phase over the longest wait: 2 pi t sigma where nothing refocuses, else sqrt(2 chi_n) of charge and white noise."""
+    """Rms phase over the longest wait: 2 pi t sigma where nothing refocuses, else sqrt(2 chi_n) of charge and white noise.
+
+    Formula: none; 2 pi t sigma without pulses, else sqrt((2 pi A t)^2 c_n + 2 pi^2 S t), c_n a finite sum over
+    pairs of pulses.
+    """
     refocused = np.sqrt(2 * refocused_chi(amplitude=amplitude, density=density, time=wait, pulses=pulses))
     return np.where(pulses > 0, refocused, 2 * np.pi * wait * total)
 
@@ -169,7 +193,11 @@ def wait_phase(*, total: Array, amplitude: Array, density: Array, wait: Array, p
 def unexplained_noise(
     *, measured: Array, nuclear: Array, barrier: Array, magnet: Array, amplitude: Array, density: Array, lowest: Array
 ) -> Array:
-    """What the model leaves unexplained of a measured T2*: sqrt(2 max(0, 1 - chi_model(T2*)))/(2 pi T2*)."""
+    """What the model leaves unexplained of a measured T2*: sqrt(2 max(0, 1 - chi_model(T2*)))/(2 pi T2*).
+
+    Formula: none; as described, chi_model = (2 pi t)^2 (s^2/2 + A^2 J(2 pi f_l t)) + pi^2 S t at t = T2*, s^2 the
+    sum of the squares of nuclei, barrier and magnet, J(z) the integral of (1 - cos u)/u^3 from z on.
+    """
     static = np.sqrt(nuclear**2 + barrier**2 + magnet**2)
     model = free_chi(static=static, amplitude=amplitude, density=density, lowest=lowest, time=measured)
     return np.sqrt(2 * np.maximum(0.0, 1 - model)) / (2 * np.pi * measured)
@@ -182,7 +210,11 @@ def rms_of_t2_star(t2_star: Array) -> Array:
 
 @law(FRACTION, static=FREQUENCY, amplitude=FREQUENCY_NOISE, density=WHITE_NOISE, lowest=FREQUENCY, time=TIME)
 def free_chi(*, static: Array, amplitude: Array, density: Array, lowest: Array, time: Array) -> Array:
-    """chi after free evolution over `time`; 0 at time 0."""
+    """chi after free evolution over `time`; 0 at time 0.
+
+    Formula: none; (2 pi t)^2 (s^2/2 + A^2 J(2 pi f_l t)) + pi^2 S t, J(z) the integral of (1 - cos u)/u^3 from z
+    on.
+    """
     flicker = np.where(time > 0, flicker_integral(2 * np.pi * lowest * np.where(time > 0, time, 1.0)), 0.0)
     return (2 * np.pi * time) ** 2 * (static**2 / 2 + amplitude**2 * flicker) + np.pi**2 * density * time
 

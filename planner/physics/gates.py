@@ -50,7 +50,10 @@ def noise_time(*, wait: Array, gate_time: Array) -> Array:
     duration=TIME,
 )
 def pulse_detuning(*, static: Array, amplitude: Array, lowest: Array, duration: Array) -> Array:
-    """Rms detuning during a pulse: static noise and the 1/f noise of that duration."""
+    """Rms detuning during a pulse: static noise and the 1/f noise of that duration.
+
+    Formula: none; sqrt(static^2 + 2 A^2 J(2 pi f_l t)), J(z) the integral of (1 - cos u)/u^3 from z on.
+    """
     return np.hypot(static, flicker_rms(amplitude=amplitude, lowest=lowest, time=duration))
 
 
@@ -64,7 +67,11 @@ def pulse_detuning(*, static: Array, amplitude: Array, lowest: Array, duration: 
     duration=TIME,
 )
 def gate_error(*, detuning: Array, rabi_frequency: Array, density: Array, duration: Array) -> Array:
-    """Average infidelity of a pi pulse under Gaussian slow detuning, exact, plus (1 - exp(-pi^2 S t))/3 of white noise."""
+    """Average infidelity of a pi pulse under Gaussian slow detuning, exact, plus (1 - exp(-pi^2 S t))/3 of white noise.
+
+    Formula: none; the mean of 2/3 (1 - sin^2((pi/2) sqrt(1 + r^2))/(1 + r^2)) over Gaussian r with the rms detuning
+    over the Rabi frequency, by Gauss-Hermite, and the white noise in closed form.
+    """
     return detuned_pulse_error(detuning / rabi_frequency) - np.expm1(-(np.pi**2) * density * duration) / 3
 
 
@@ -92,7 +99,11 @@ def error_per_gate(
     idle: Array,
     t1: Array,
 ) -> Array:
-    """Error of one gate and its idle time: pulse, free dephasing while idle, and relaxation where T1 is given; at most 1/2."""
+    """Error of one gate and its idle time: pulse, free dephasing while idle, and relaxation where T1 is given; at most 1/2.
+
+    Formula: none; gate_error + (1 - exp(-chi))/3 + (1 - exp(-t/T1))/6 + (1 - exp(-t/(2 T1)))/3, chi that of free
+    dephasing while idle and t gate and idle time.
+    """
     chi = free_chi(static=static, amplitude=amplitude, density=density, lowest=lowest, time=idle)
     ratio = np.where(np.isnan(t1), 0.0, (gate_time + idle) / t1)
     relaxed = -np.expm1(-ratio) / 6 - np.expm1(-ratio / 2) / 3
@@ -107,7 +118,10 @@ def sequence_time(*, gates: Array, gate_time: Array, idle: Array) -> Array:
 
 @law(NUMBER, reference="nielsen2002", place="composition of depolarised gates", error=FRACTION, allowed=FRACTION)
 def gates_randomised(*, error: Array, allowed: Array) -> Array:
-    """Gates until the sequence error is reached when errors add at random: ln(1 - 2E)/ln(1 - 2e); 0 from e = 1/2 on."""
+    """Gates until the sequence error is reached when errors add at random: ln(1 - 2E)/ln(1 - 2e); 0 from e = 1/2 on.
+
+    Formula: 0 if error >= 0.5 else log(1 - 2 * allowed) / log(1 - 2 * error)
+    """
     small = np.minimum(error, 0.5 - 1e-17)
     with np.errstate(divide="ignore"):
         return np.where(error >= 0.5, 0.0, np.log1p(-2 * allowed) / np.log1p(-2 * small))
@@ -141,7 +155,10 @@ def gates_aligned(
     gate_time: Array,
     idle: Array,
 ) -> Array:
-    """Gates until (1 - W)/3 = E when errors add up as one wait, with refocusing pulses where there are any; nan if never."""
+    """Gates until (1 - W)/3 = E when errors add up as one wait, with refocusing pulses where there are any; nan if never.
+
+    Formula: none; the root t of chi(t) = -ln(1 - 3 E) by Newton, free or refocused, over gate and idle time.
+    """
     chi = -np.log1p(-3 * allowed)
     free = time_of_chi(chi=chi, static=static, amplitude=free_amplitude, density=free_density, lowest=lowest)
     refocused = refocused_time(chi=chi, amplitude=amplitude, density=density, pulses=pulses)
@@ -178,7 +195,11 @@ def sequence_error(
     pulses: Array,
     sequence_time: Array,
 ) -> Array:
-    """Error of the whole circuit by the accumulation that is judged."""
+    """Error of the whole circuit by the accumulation that is judged.
+
+    Formula: none; (1 - (1 - 2 e)^n)/2 where errors add at random, else (1 - exp(-chi))/3 with chi over the whole
+    sequence.
+    """
     free = free_chi(static=static, amplitude=free_amplitude, density=free_density, lowest=lowest, time=sequence_time)
     refocused = refocused_chi(amplitude=amplitude, density=density, time=sequence_time, pulses=pulses)
     one_wait = -np.expm1(-np.where(pulses > 0, refocused, free)) / 3
@@ -217,7 +238,11 @@ def allowed_noise(
     allowed_gate_error: Array,
     allowed_sequence_error: Array,
 ) -> Array:
-    """The slow detuning that a qubit stands: the smallest of what phase, gate error and sequence error allow."""
+    """The slow detuning that a qubit stands: the smallest of what phase, gate error and sequence error allow.
+
+    Formula: none; the smallest of allowed_phase/(2 pi wait) and of two roots, by the secant rule, of the error of a
+    pulse (with its idle time) as a function of the detuning.
+    """
     phase = np.where(pulses > 0, np.inf, allowed_phase / (2 * np.pi * wait))
     one_gate = -np.expm1(np.log1p(-2 * allowed_sequence_error) / gates) / 2
     pulse_alone = _tolerated_ratio(allowed_gate_error, np.zeros_like(allowed_gate_error)) * rabi_frequency

@@ -10,12 +10,10 @@ from planner.kinds import (
     CHARGE_NOISE,
     COUNT,
     DISPLACEMENT,
-    DRIFT,
     FIELD,
     FRACTION,
     FREQUENCY,
     FREQUENCY_NOISE,
-    FREQUENCY_PER_FIELD,
     GRADIENT,
     NUMBER,
     RELATIVE_NOISE,
@@ -23,28 +21,6 @@ from planner.kinds import (
     WHITE_NOISE,
 )
 from planner.physics import Array
-
-HOUR = 3600.0
-
-
-@law(
-    FREQUENCY,
-    field_slope=FREQUENCY_PER_FIELD,
-    field=FIELD,
-    drift=DRIFT,
-    settle_slope=DRIFT,
-    since_ramp=TIME,
-    interval=TIME,
-)
-def drift_noise(
-    *, field_slope: Array, field: Array, drift: Array, settle_slope: Array, since_ramp: Array, interval: Array
-) -> Array:
-    """Frequency change over one calibration interval by the magnet's drift and, after a ramp, its settling.
-
-    The settling slope falls as 1/t from its value at one hour; earlier than that counts as one hour.
-    """
-    hours = np.maximum(np.where(np.isnan(since_ramp), np.inf, since_ramp / HOUR), 1.0)
-    return np.abs(field_slope) * field * (drift + settle_slope / hours) * interval
 
 
 @law(
@@ -57,7 +33,11 @@ def drift_noise(
     shots=COUNT,
 )
 def calibration_noise(*, contrast: Array, wait: Array, t2_star: Array, shots: Array) -> Array:
-    """Precision 1/(2 pi V tau sqrt N) of a Ramsey calibration, V = contrast exp(-(tau/T2*)^2); nan where V is below 0.01."""
+    """Precision 1/(2 pi V tau sqrt N) of a Ramsey calibration, V = contrast exp(-(tau/T2*)^2); nan where V is below 0.01.
+
+    Formula: nan if contrast * exp(-((wait / t2_star)**2)) < 0.01 else 1 / (2 * pi * contrast * exp(-((wait /
+    t2_star)**2)) * wait * sqrt(shots))
+    """
     visible = contrast * np.exp(-((wait / t2_star) ** 2))
     return np.where(visible < 0.01, np.nan, 1 / (2 * np.pi * visible * wait * np.sqrt(shots)))
 
@@ -76,7 +56,10 @@ def loose_noise(*, tone: Array, drift: Array) -> Array:
 
 @law(FREQUENCY, reference="jcgm100", place="5.1.2", field_noise=FREQUENCY, measured_t2_star=TIME)
 def field_noise_seen(*, field_noise: Array, measured_t2_star: Array) -> Array:
-    """Field noise, but not more than a measured T2* leaves room for, 1/(sqrt2 pi T2*)."""
+    """Field noise, but not more than a measured T2* leaves room for, 1/(sqrt2 pi T2*).
+
+    Formula: field_noise if unknown(measured_t2_star) else min(field_noise, 1 / (sqrt(2) * pi * measured_t2_star))
+    """
     return np.fmin(field_noise, 1 / (np.sqrt(2) * np.pi * measured_t2_star))
 
 
@@ -111,6 +94,9 @@ def charge_amplitude(
     """1/f amplitude at 1 Hz: the first of typed, relative to the qubit's frequency, through a gradient, the material's.
 
     An electron without a local field and none of these has none; with a local field and none of these it is unknown (nan).
+
+    Formula: known(typed, own_relative * frequency, g * BOHR_MAGNETON_HZ * gradient * displacement * charge_noise,
+    material_relative * frequency, nan if is_hole > 0 or norm(local_field) > 0 else 0)
     """
     through_gradient = g * BOHR_MAGNETON_HZ * gradient * displacement * charge_noise
     nothing_typed = np.where((is_hole > 0) | (_size(local_field) > 0), np.nan, 0.0)
@@ -138,7 +124,11 @@ def allowed_share(*, source_share: Array, allowed_noise: Array) -> Array:
 def refocused_amplitude(
     *, amplitude: Array, typed: Array, own_relative: Array, material_relative: Array, gradient: Array, white: Array
 ) -> Array:
-    """1/f amplitude that refocusing meets; unknown (nan) where nothing says what noise is left beside the static one."""
+    """1/f amplitude that refocusing meets; unknown (nan) where nothing says what noise is left beside the static one.
+
+    Formula: nan if unknown(typed) and unknown(own_relative) and unknown(material_relative) and unknown(gradient)
+    and unknown(white) else amplitude
+    """
     stated = (typed, own_relative, material_relative, gradient, white)
     silent = np.all(np.isnan(np.stack(np.broadcast_arrays(*stated))), axis=0)
     return np.where(silent, np.nan, amplitude)

@@ -59,6 +59,8 @@ def nuclear_noise(*, model: Array, typed: Array, tracked: Array, axis_share: Arr
     """Slow rms of the well's nuclei: tracked, else typed, else the bath's; for a hole times its share along the heavy axis.
 
     An unknown axis share (a hole with one g value) counts as 1. What tracking leaves is not projected.
+
+    Formula: known(tracked, known(typed, model) * (known(axis_share, 1) if is_hole > 0 else 1))
     """
     projection = np.where(is_hole > 0, np.where(np.isnan(axis_share), 1.0, axis_share), 1.0)
     slow = np.where(np.isnan(typed), model, typed) * projection

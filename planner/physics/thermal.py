@@ -20,13 +20,19 @@ def thermal_ratio(*, frequency: Array, temperature: Array) -> Array:
 
 @law(FRACTION, reference="boltzmann", place="two-level population", ratio=NUMBER)
 def excited_share(*, ratio: Array) -> Array:
-    """Population of the upper level in equilibrium, 1/(1 + e^x)."""
+    """Population of the upper level in equilibrium, 1/(1 + e^x).
+
+    Formula: 1 / (1 + exp(ratio))
+    """
     return _fermi(ratio)
 
 
 @law(FRACTION, reference="elzerman2004", place="thermal tail of the reservoir", ratio=NUMBER)
 def tunnelling_error(*, ratio: Array) -> Array:
-    """Error of energy-selective readout with the reservoir level midway, 1/(1 + e^(x/2))."""
+    """Error of energy-selective readout with the reservoir level midway, 1/(1 + e^(x/2)).
+
+    Formula: 1 / (1 + exp(ratio / 2))
+    """
     return _fermi(ratio / 2)
 
 
@@ -56,7 +62,10 @@ def valley_distance(*, energy: Array, valley_splitting: Array) -> Array:
 
 @law(ENERGY, valley_splitting=ENERGY, in_use=NUMBER)
 def smallest_in_use(*, valley_splitting: Array, in_use: Array) -> Array:
-    """The smallest value among the qubits in use."""
+    """The smallest value among the qubits in use.
+
+    Formula: none; the smallest of the qubits in use.
+    """
     return np.where(in_use > 0, valley_splitting, np.inf).min(axis=-1, keepdims=True)
 
 

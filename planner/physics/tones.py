@@ -30,6 +30,8 @@ def local_oscillator(*, frequency: Array, in_use: Array, half_width: Array) -> A
     itself and all images at least 10 MHz from every qubit in use.
 
     If none does, the one that keeps them farthest; the lower of equals. If no tone reaches all, the middle.
+
+    Formula: none; a search over the tones on whole MHz.
     """
     shape = np.broadcast_shapes(frequency.shape[:-1], half_width.shape[:-1])
     result = np.empty((*shape, 1))
@@ -38,6 +40,12 @@ def local_oscillator(*, frequency: Array, in_use: Array, half_width: Array) -> A
     for index in np.ndindex(shape):
         result[index] = _best_tone(rows[index][in_use > 0], float(widths[index][0]))
     return result
+
+
+@law(FREQUENCY, oscillator=FREQUENCY)
+def local_tone(*, oscillator: Array) -> Array:
+    """The local oscillator as it is used."""
+    return oscillator
 
 
 @law(FREQUENCY, frequency=FREQUENCY, oscillator=FREQUENCY)

@@ -20,7 +20,10 @@ from planner.physics import Array
 
 @law(FIELD, field=FIELD, elevation=ANGLE, azimuth=ANGLE)
 def set_vector(*, field: Array, elevation: Array, azimuth: Array) -> Array:
-    """The set field as a vector in the chip frame (c1, c2, c3)."""
+    """The set field as a vector in the chip frame (c1, c2, c3).
+
+    Formula: field * vector(cos(elevation) * cos(azimuth), cos(elevation) * sin(azimuth), sin(elevation))
+    """
     return field[..., None] * _direction(elevation, azimuth)
 
 
@@ -32,27 +35,39 @@ def field_at_dot(*, set_vector: Array, local_field: Array) -> Array:
 
 @law(FIELD, field_at_dot=FIELD)
 def field_size(*, field_at_dot: Array) -> Array:
-    """Size of the field at the dot."""
+    """Size of the field at the dot.
+
+    Formula: norm(field_at_dot)
+    """
     return _norm(field_at_dot)
 
 
 @law(NUMBER, reference="crippa2018", place="symmetric g-matrix", g=NUMBER, g_euler=ANGLE)
 def g_tensor(*, g: Array, g_euler: Array) -> Array:
-    """The symmetric g-tensor R diag(g) R^T, R = Rz(a) Ry(b) Rz(c) with the ZYZ angles a, b, c (active rotations)."""
+    """The symmetric g-tensor R diag(g) R^T, R = Rz(a) Ry(b) Rz(c) with the ZYZ angles a, b, c (active rotations).
+
+    Formula: none; R diag(g) R^T, the rotation R multiplied out from its three angles.
+    """
     axes = principal_axes(g_euler)
     return (axes * g[..., None, :]) @ np.swapaxes(axes, -1, -2)
 
 
 @law(FIELD, reference="crippa2018", place="g-matrix times field", g_tensor=NUMBER, field_at_dot=FIELD)
 def precession_vector(*, g_tensor: Array, field_at_dot: Array) -> Array:
-    """v = g B: along the quantisation axis (not along B), with the size g_eff B; nan where the spin does not precess."""
+    """v = g B: along the quantisation axis (not along B), with the size g_eff B; nan where the spin does not precess.
+
+    Formula: g_tensor @ field_at_dot
+    """
     vector = _apply(g_tensor, field_at_dot)
     return np.where(_norm(vector)[..., None] > 0, vector, np.nan)
 
 
 @law(NUMBER, reference="crippa2018", place="effective g", precession_vector=FIELD, field_size=FIELD)
 def effective_g(*, precession_vector: Array, field_size: Array) -> Array:
-    """g_eff = |g b| along the direction b of the field."""
+    """g_eff = |g b| along the direction b of the field.
+
+    Formula: norm(precession_vector) / field_size
+    """
     return _norm(precession_vector) / field_size
 
 
@@ -72,27 +87,40 @@ def zeeman_energy(*, frequency: Array) -> Array:
     FREQUENCY_PER_FIELD, reference="crippa2018", place="longitudinal response", g_tensor=NUMBER, precession_vector=FIELD
 )
 def field_response(*, g_tensor: Array, precession_vector: Array) -> Array:
-    """(muB/h) u.g, u = v/|v|: the change of frequency per field added along c1, c2, c3."""
+    """(muB/h) u.g, u = v/|v|: the change of frequency per field added along c1, c2, c3.
+
+    Formula: BOHR_MAGNETON_HZ * (precession_vector @ g_tensor) / norm(precession_vector)
+    """
     axis = precession_vector / _norm(precession_vector)[..., None]
     return BOHR_MAGNETON_HZ * _apply(np.swapaxes(g_tensor, -1, -2), axis)
 
 
 @law(FREQUENCY_PER_FIELD, field_response=FREQUENCY_PER_FIELD, elevation=ANGLE, azimuth=ANGLE)
 def field_slope(*, field_response: Array, elevation: Array, azimuth: Array) -> Array:
-    """df/dB of the set field's size; local fields stay."""
+    """df/dB of the set field's size; local fields stay.
+
+    Formula: field_response @ vector(cos(elevation) * cos(azimuth), cos(elevation) * sin(azimuth), sin(elevation))
+    """
     return _dot(field_response, _direction(elevation, azimuth))
 
 
 @law(FREQUENCY_PER_ANGLE, field_response=FREQUENCY_PER_FIELD, field=FIELD, elevation=ANGLE, azimuth=ANGLE)
 def elevation_slope(*, field_response: Array, field: Array, elevation: Array, azimuth: Array) -> Array:
-    """df/d(elevation) of the set field; local fields stay."""
+    """df/d(elevation) of the set field; local fields stay.
+
+    Formula: field * field_response @ vector(-sin(elevation) * cos(azimuth), -sin(elevation) * sin(azimuth),
+    cos(elevation))
+    """
     tangent = _stack(-np.sin(elevation) * np.cos(azimuth), -np.sin(elevation) * np.sin(azimuth), np.cos(elevation))
     return field * _dot(field_response, tangent)
 
 
 @law(FREQUENCY_PER_ANGLE, field_response=FREQUENCY_PER_FIELD, field=FIELD, elevation=ANGLE, azimuth=ANGLE)
 def azimuth_slope(*, field_response: Array, field: Array, elevation: Array, azimuth: Array) -> Array:
-    """df/d(azimuth) of the set field; local fields stay."""
+    """df/d(azimuth) of the set field; local fields stay.
+
+    Formula: field * field_response @ vector(-cos(elevation) * sin(azimuth), cos(elevation) * cos(azimuth), 0)
+    """
     tangent = _stack(-np.cos(elevation) * np.sin(azimuth), np.cos(elevation) * np.cos(azimuth), 0 * elevation)
     return field * _dot(field_response, tangent)
 
@@ -103,6 +131,9 @@ def heavy_axis_share(*, g: Array, g_euler: Array, precession_vector: Array, is_h
 
     With three equal values that axis is c3 for an electron. For a hole whose largest value is not the only one of its size
     the axis is not known and the result is nan.
+
+    Formula: none; |u.h|, u the unit vector along g B and h the principal axis of the largest |g|, turned by
+    g_euler.
     """
     axes = np.swapaxes(principal_axes(g_euler), -1, -2)
     heaviest = np.eye(3)[np.argmax(np.abs(g), axis=-1)]
@@ -116,7 +147,10 @@ def heavy_axis_share(*, g: Array, g_euler: Array, precession_vector: Array, is_h
 
 @law(FREQUENCY, frequency=FREQUENCY, in_use=NUMBER)
 def spacing(*, frequency: Array, in_use: Array) -> Array:
-    """Distance to the nearest other qubit in use; nan where there is none."""
+    """Distance to the nearest other qubit in use; nan where there is none.
+
+    Formula: none; the smallest |f - f_j| over the other qubits in use, by sorting.
+    """
     order = np.argsort(np.where(in_use > 0, frequency, np.inf), axis=-1)
     used = np.where(in_use > 0, frequency, np.inf)
     ranked = np.take_along_axis(np.broadcast_to(used, order.shape), order, axis=-1)
@@ -125,7 +159,10 @@ def spacing(*, frequency: Array, in_use: Array) -> Array:
 
 @law(FREQUENCY, reference="jcgm100", place="5.1.2", field_response=FREQUENCY_PER_FIELD, uncertainty=FIELD)
 def vector_uncertainty(*, field_response: Array, uncertainty: Array) -> Array:
-    """Uncertainty of f from independent uncertainties of the components of a field."""
+    """Uncertainty of f from independent uncertainties of the components of a field.
+
+    Formula: norm(field_response * uncertainty)
+    """
     return _norm(field_response * uncertainty)
 
 
@@ -149,7 +186,11 @@ def tensor_uncertainty(
     field_at_dot: Array,
     precession_vector: Array,
 ) -> Array:
-    """Uncertainty of f from those of the principal values and of the ZYZ angles, to first order."""
+    """Uncertainty of f from those of the principal values and of the ZYZ angles, to first order.
+
+    Formula: none; derivatives of |g B| by every principal value and angle, times their uncertainties,
+    root-sum-square.
+    """
     axes = principal_axes(g_euler)
     unit = precession_vector / _norm(precession_vector)[..., None]
     along_unit = _apply(np.swapaxes(axes, -1, -2), unit)

@@ -14,14 +14,15 @@ from planner.evaluate import Evaluation, evaluate
 from planner.planfile import Document
 from planner.session import Session
 from planner.studies.typenext import TypeNext, type_next
-from planner.tui import files, qubits, terminal
+from planner.tui import files, records, terminal
 from planner.tui.actions import ACTIONS
 from planner.tui.desk import Desk
 from planner.tui.foot import Foot
 from planner.tui.grid import Grid
 from planner.tui.help import Help
+from planner.tui.reader import Reader
 from planner.values import GivenError
-from planner.views.editing import NOT_TYPED, given_at, help_at, typing_line
+from planner.views.editing import NOT_TYPED, NOTHING_TO_EXPLAIN, READING, given_at, help_at, typing_line
 
 
 class Planner(App[None], inherit_bindings=False):
@@ -66,7 +67,10 @@ class Planner(App[None], inherit_bindings=False):
         """Arrange for the new size; what was hidden has lost the keyboard."""
         self.desk.lay_out()
         self.show_head()
-        (self.foot if self.foot.asking else self.desk.grid).focus(scroll_visible=False)
+        if self.foot.asking:
+            self.foot.focus(scroll_visible=False)
+        else:
+            self.desk.take_keyboard()
 
     # -- showing
 
@@ -104,14 +108,19 @@ class Planner(App[None], inherit_bindings=False):
     # -- keys and what comes of them
 
     def on_key(self, event: events.Key) -> None:
-        """Keys that no grid takes: Space opens the actions, Tab goes on. A key while no grid has the keyboard is not lost."""
-        if not isinstance(self.focused, Grid):
+        """Keys that no pane takes: Space opens the actions, Tab goes on. A key while none has the keyboard is not lost."""
+        if not isinstance(self.focused, Grid | Reader):
             self.desk.take_keyboard()
             self.desk.grid.post_message(events.Key(event.key, event.character))
         elif event.key == "space":
             self.foot.choose(self.action_do)
         elif event.key in {"tab", "shift+tab"}:
             self.visit(self.desk.beside(1 if event.key == "tab" else -1))
+        elif event.key == "escape" and self.desk.explained:
+            self.desk.close()
+            self.foot.say(help_at(self.evaluation, self.desk.grid.cursor_key))
+        elif self.desk.reading:
+            self.foot.say(READING)
 
     def on_grid_moved(self, message: Grid.Moved) -> None:
         """The help line follows the cursor."""
@@ -156,6 +165,11 @@ class Planner(App[None], inherit_bindings=False):
         self.take(session)
         return True
 
+    def explain(self) -> None:
+        """Show why the number under the cursor is what it is."""
+        if not self.desk.explain():
+            self.foot.say(NOTHING_TO_EXPLAIN, bad=True)
+
     # -- the actions, by their names in the table
 
     def action_do(self, method: str) -> None:
@@ -165,9 +179,10 @@ class Planner(App[None], inherit_bindings=False):
             "save": lambda: files.save(self),
             "redo": lambda: self.take(sessions.redone(self.session)),
             "save_as": lambda: files.save_as(self),
-            "add_qubit": lambda: qubits.add(self),
-            "drop_qubit": lambda: qubits.drop(self),
+            "add_row": lambda: records.add(self),
+            "drop_row": lambda: records.drop(self),
             "margins": lambda: self.visit("margins"),
+            "why": self.explain,
             "leave": lambda: files.leave(self),
             "help": lambda: self.push_screen(Help()),
         }

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import re
+import textwrap
 from collections.abc import Callable, Mapping
 
 from rich.text import Text
@@ -9,9 +11,10 @@ from textual import events
 from textual.widget import Widget
 from textual.widgets import Static
 
-from planner.tui.actions import ACTIONS, RESTING, actions_line
+from planner.tui.actions import ACTIONS, CHOOSING, RESTING, actions_line
 from planner.tui.draft import EDITS, Draft, cleaned
 from planner.tui.grid import typed_character
+from planner.tui.lines import CUT
 
 Then = Callable[[], None]
 
@@ -41,7 +44,10 @@ class Foot(Static, can_focus=True):
 
     def choose(self, do: Callable[[str], None]) -> None:
         """Opens the actions; the letter typed next does one, by its method's name."""
+        before = (self._line, self._bad)
+        self.say(CHOOSING)
         self._ask(actions_line(), {action.letter: _bound(do, action.method) for action in ACTIONS})
+        self._before = before
 
     def ask(self, question: str, keys: str, answers: Mapping[str, Then]) -> None:
         """Asks a question to be answered by one key; Escape answers nothing."""
@@ -115,15 +121,33 @@ class Foot(Static, can_focus=True):
             )
             self.update(Text("\n").join([line, Text("Enter accept  Esc give up")]), layout=False)
             return
-        folded = line.wrap(self.app.console, width)[: self.size.height - 1 or 1]
+        keys = _folded_keys(self._keys, width)
+        room = max(1, self.size.height - len(keys))
+        shown = _cut(list(line.wrap(self.app.console, width)), room, width)
         self.update(
-            Text("\n").join([*folded, *[Text("")] * (self.size.height - 1 - len(folded)), Text(self._keys)]),
+            Text("\n").join([*shown, *[Text("")] * (room - len(shown)), *map(Text, keys)]),
             layout=False,
         )
 
     def on_resize(self) -> None:
         """Another width, another cut."""
         self._paint()
+
+
+def _folded_keys(keys: str, width: int) -> list[str]:
+    """The line of keys in pieces of at most `width` characters, each key together with what it does."""
+    whole = re.sub(r"(?<! ) (?! )", "\xa0", keys)
+    return [piece.replace("\xa0", " ") for piece in textwrap.wrap(whole, width)]
+
+
+def _cut(folds: list[Text], room: int, width: int) -> list[Text]:
+    """As many folds of a line as there is room for, marked where that is not all of it."""
+    if len(folds) <= room:
+        return folds
+    last = folds[room - 1].copy()
+    last.rstrip()
+    last.truncate(width - 1)
+    return [*folds[: room - 1], last.append(CUT)]
 
 
 def _focus(widget: Widget) -> None:

@@ -5,19 +5,23 @@ from __future__ import annotations
 from textual import events
 from textual.app import ComposeResult
 from textual.screen import ModalScreen
-from textual.widgets import Static
 
 from planner.tui.actions import help_lines
+from planner.tui.reader import Reader
 
 
 class Help(ModalScreen[None]):
-    """Covers the screen with the help until any key is pressed."""
+    """Covers the screen with the help until a key is pressed that does not scroll it."""
 
     def compose(self) -> ComposeResult:
         """One text."""
-        yield Static("\n".join(["HELP (any key goes back)", "", *help_lines()]), markup=False)
+        yield Reader("HELP, Escape goes back", help_lines())
+
+    def on_mount(self) -> None:
+        """The text takes the keys that scroll."""
+        self.query_one(Reader).focus()
 
     def on_key(self, event: events.Key) -> None:
-        """Any key goes back."""
+        """Any other key goes back."""
         event.stop()
         self.dismiss()

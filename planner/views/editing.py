@@ -11,10 +11,13 @@ from planner.soundness import edited
 from planner.values import GivenError
 from planner.views.numbers import understood, without_origin
 from planner.views.rows import headline, margin_line
+from planner.views.why import explanation
 from planner.views.words import help_line
 
 NOT_TYPED = "results aren't typed: they follow from the givens"
-NOT_ON_A_QUBIT = "nothing removed: go to the row of the qubit first, with Tab and the arrows"
+NOT_ON_A_ROW = "nothing removed: go to the row of a qubit, coil or the like first, with Tab and the arrows"
+NOTHING_TO_EXPLAIN = "nothing to explain here: go to a number first, with Tab and the arrows"
+READING = "this is an explanation: Tab goes to what it explains, Escape closes it"
 REMOVED = "removed"
 
 
@@ -45,8 +48,23 @@ def help_at(evaluation: Evaluation, key: str) -> str:
     derived = next((derived for derived in evaluation.graph.order if derived.key == name), None)
     if derived is None:
         return ""
-    reason = evaluation.columns[name].why.get(evaluation.names.index(row)) if row in evaluation.names else None
+    names = evaluation.tables[derived.per.value]
+    reason = evaluation.columns[name].why.get(names.index(row)) if row in names else None
     return f"{name}: {derived.help}" + (f". Unknown: {reason}" if reason else "")
+
+
+def why_at(evaluation: Evaluation, key: str, width: int) -> list[str]:
+    """The explanation of the given, result or margin with this key of a cell; empty where there is no such number."""
+    if given_at(evaluation, key) is not None:
+        return explanation(evaluation, key, width=width)
+    name, _, row = key.partition("@")
+    if name.startswith("margin."):
+        known = any(name == f"margin.{limit.name}" for limit in evaluation.graph.limits)
+        rows = ("", *evaluation.names)
+    else:
+        derived = next((derived for derived in evaluation.graph.order if derived.key == name), None)
+        known, rows = derived is not None, evaluation.tables[derived.per.value] if derived else ()
+    return explanation(evaluation, name.removeprefix("margin."), row, width=width) if known and row in rows else []
 
 
 def sentence(text: str) -> str:

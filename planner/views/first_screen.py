@@ -42,7 +42,7 @@ def first_screen(evaluation: Evaluation, following: TypeNext | None, width: int 
         "",
         *text_lines(narrow),
         "",
-        *text_lines(margin_table(evaluation, width)),
+        *text_lines(margin_table(evaluation, width, brief=True)),
     ]
     return [line[:width].rstrip() for line in lines]
 

@@ -9,13 +9,13 @@ from typing import Any
 import numpy as np
 
 from planner import __version__
-from planner.declare import Missing, Per
+from planner.declare import Missing
 from planner.evaluate import Evaluation, resolve_all
 from planner.graph import givens
 from planner.kinds import Quantity
 from planner.margins import Margin, number_or_none
 from planner.materials import edition
-from planner.plan import address_of
+from planner.plan import ROWS, address_of
 from planner.planfile import FORMAT
 from planner.studies.typenext import TypeNext
 from planner.views.first_screen import head_lines, text_lines
@@ -24,7 +24,7 @@ from planner.views.table import Cell, Column, Table
 from planner.views.tables import margin_table
 
 WIDTH = 80
-QUBITS_BESIDE = 6
+ROWS_BESIDE = 6
 
 
 def plan_hash(evaluation: Evaluation) -> str:
@@ -56,11 +56,10 @@ def report_text(evaluation: Evaluation, following: TypeNext | None, name: str) -
         "margins",
         *check_lines(evaluation, name)[1:],
     ]
-    for start in range(0, len(evaluation.names), QUBITS_BESIDE):
-        lines += [
-            "",
-            *text_lines(_results(evaluation, range(start, min(start + QUBITS_BESIDE, len(evaluation.names))))),
-        ]
+    for table in _tables_with_results(evaluation):
+        count = len(evaluation.tables[table])
+        for start in range(0, count, ROWS_BESIDE):
+            lines += ["", *text_lines(_results(evaluation, table, range(start, min(start + ROWS_BESIDE, count))))]
     return [line.rstrip() for line in lines]
 
 
@@ -81,24 +80,34 @@ def report_json(evaluation: Evaluation, name: str) -> str:
     return json.dumps(document, indent=1, ensure_ascii=False, allow_nan=False)
 
 
-def _results(evaluation: Evaluation, rows: range) -> Table:
+def _results(evaluation: Evaluation, table: str, rows: range) -> Table:
     shown = [
         derived
         for derived in evaluation.graph.order
-        if derived.shown and derived.per is Per.QUBIT and derived.key not in givens()
+        if derived.shown and derived.per.value == table and derived.key not in givens()
     ]
     shown.sort(key=lambda derived: derived.key)
-    width = max(len(derived.key) for derived in shown)
+    names = [evaluation.tables[table][row] for row in rows]
     columns = (
-        Column(("result",), width),
+        Column(("result",), max(len(derived.key) for derived in shown)),
         Column(("unit",), 8),
-        *(Column((evaluation.names[row],), max(8, len(evaluation.names[row])), right=True) for row in rows),
+        *(Column((name,), max(8, len(name)), right=True) for name in names),
     )
     lines = tuple(
-        (Cell(derived.key), Cell(derived.display), *(Cell(result_text(evaluation, derived.key, row)) for row in rows))
+        (
+            Cell(derived.key),
+            Cell(derived.display),
+            *(Cell(result_text(evaluation, derived.key, row)) for row in rows),
+        )
         for derived in shown
     )
     return Table(columns, lines)
+
+
+def _tables_with_results(evaluation: Evaluation) -> list[str]:
+    """Tables that have rows and results, the plan first, then the qubits."""
+    found = {derived.per.value for derived in evaluation.graph.order if derived.shown and derived.key not in givens()}
+    return [table for table in dict.fromkeys(("", "qubit", *ROWS)) if table in found and evaluation.tables[table]]
 
 
 def _numbers(value: Quantity | str | None) -> tuple[Any, Any]:
@@ -160,7 +169,7 @@ def _values(evaluation: Evaluation, key: str) -> dict[str, Any]:
     values = [number_or_none(value) for value in np.ravel(column.base())]
     if column.of_plan:
         return {"value": values[0], **({"why": str(column.why[0])} if 0 in column.why else {})}
-    names = evaluation.names
+    names = evaluation.tables[column.table]
     why = {names[row]: str(reason.of(names[row])) for row, reason in column.why.items()}
     return {"values": dict(zip(names, values, strict=True)), **({"why": why} if why else {})}
 
@@ -173,8 +182,8 @@ def _margin(evaluation: Evaluation, margin: Margin) -> dict[str, Any]:
         "expected": margin.expected,
         "unit": margin.compare.kind.si,
         "margin": margin.value,
-        "low": None,
-        "high": None,
+        "low": margin.low,
+        "high": margin.high,
         "verdict": margin.verdict,
         "until": until_word(margin) if margin.until is not None else None,
         "why": gap(evaluation, margin),

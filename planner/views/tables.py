@@ -1,4 +1,4 @@
-"""The grids: qubits with results and givens in one row, a chapter's givens, the margins."""
+"""The grids: qubits and other records with results and givens in one row, a chapter's givens, the margins."""
 
 from __future__ import annotations
 
@@ -10,17 +10,46 @@ from planner.evaluate import Evaluation
 from planner.graph import givens
 from planner.kinds import Quantity, clean
 from planner.margins import CLEAR, SHORT, TIGHT, UNKNOWN, VERDICTS, number_or_none
-from planner.plan import Address, Plan, key_of, resolved, table_givens, unit_shown
+from planner.plan import ROWS, Address, Plan, key_of, resolved, table_givens, unit_shown
 from planner.views.numbers import margin_text, with_unit, without_origin
 from planner.views.rows import gap, result_text, until_word
 from planner.views.table import Cell, Column, Table, Tone
 
 FIRST_RESULTS = ("larmor.frequency", "larmor.spacing", "noise.total", "coherence.allowed_noise", "coherence.t2_star")
 VERDICT_TONES = {SHORT: Tone.SHORT, UNKNOWN: Tone.UNKNOWN, TIGHT: Tone.TIGHT, CLEAR: Tone.PLAIN}
-PANES = ("margins", "magnet", "clock", "source", "chip", "model", "workload", "calibration", "all_qubits", "")
+PANES = (
+    "margins",
+    "magnet",
+    "coil",
+    "clock",
+    "phase_noise",
+    "source",
+    "chip",
+    "part",
+    "model",
+    "workload",
+    "calibration",
+    "stage",
+    "line",
+    "all_qubits",
+    "pair",
+    "",
+)
+LOUD = 10.0  # a quiet margin above this tells nothing on a first look
 TWO_BESIDE = 78  # columns from which two givens stand beside each other
 LONGEST_VALUE = 22
-PANE_TITLES = {"": "plan", "all_qubits": "all qubits"}
+LONGEST_ROW = 8  # characters of a row's name beside its margin, unless qubits have longer ones
+PANE_TITLES = {
+    "": "plan",
+    "all_qubits": "all qubits",
+    "qubit": "qubits",
+    "coil": "coils",
+    "phase_noise": "phase noise",
+    "part": "parts",
+    "stage": "stages",
+    "line": "lines",
+    "pair": "pairs",
+}
 
 
 def pane_title(pane: str) -> str:
@@ -30,37 +59,56 @@ def pane_title(pane: str) -> str:
 
 def qubit_table(evaluation: Evaluation) -> Table:
     """One row a qubit of the plan: name, first results, its worst margin, its givens, the other results."""
-    plan = evaluation.plan
-    first = [evaluation.derived(key) for key in FIRST_RESULTS]
-    others = [derived for derived in evaluation.graph.order if _listed(derived) and derived.key not in FIRST_RESULTS]
-    fields = [name for name in table_givens("qubit") if name != "name"]
-    columns = (
-        Column(("", ""), _name_width(plan)),
-        *map(_result_column, first),
-        Column(("worst of this qubit", ""), 21),
-        *(_given_column(plan, name) for name in fields),
-        *map(_result_column, others),
-    )
     worst = _worst_by_row(evaluation)
-    rows = []
-    for index in range(len(plan.qubit)):
-        row = evaluation.rows.index(index) if index in evaluation.rows else None
-        rows.append(
-            (
-                _given_cell(plan, Address("qubit", index, "name")),
-                *(_result_cell(evaluation, derived, row) for derived in first),
-                worst.get(row, Cell("spare" if row is not None else "dead", Tone.FAINT)),
-                *(_given_cell(plan, Address("qubit", index, name)) for name in fields),
-                *(_result_cell(evaluation, derived, row) for derived in others),
-            )
+    places = _places(evaluation, "qubit")
+    cells = [worst.get(place, Cell("dead" if place is None else "spare", Tone.FAINT)) for place in places]
+    return record_table(evaluation, "qubit", FIRST_RESULTS, ((Column(("worst of this qubit", ""), 21), tuple(cells)),))
+
+
+def record_table(
+    evaluation: Evaluation,
+    table: str,
+    first: tuple[str, ...] | None = None,
+    extra: tuple[tuple[Column, tuple[Cell, ...]], ...] = (),
+) -> Table:
+    """One row a record of a list of tables: its name, the `first` results (None: all), `extra` columns, givens, other results.
+
+    A record without a name begins with its first given. Without any record one line says how to add one.
+    """
+    plan = evaluation.plan
+    if not plan.rows(table):
+        line = f"no {pane_title(table)}: Space n adds a row"
+        return Table((Column((), len(line)),), ((Cell(line, Tone.FAINT),),))
+    listed = [derived for derived in evaluation.graph.order if _listed(derived, table)]
+    before = listed if first is None else [evaluation.derived(key) for key in first]
+    after = [] if first is None else [derived for derived in listed if derived.key not in first]
+    name, *fields = table_givens(table)
+    columns = (
+        Column(("", "") if name == "name" else (name, ""), _name_width(plan, table, name)),
+        *map(_result_column, before),
+        *(column for column, _ in extra),
+        *(_given_column(plan, table, field) for field in fields),
+        *map(_result_column, after),
+    )
+    cells = tuple(
+        (
+            _given_cell(plan, Address(table, row, name)),
+            *(_result_cell(evaluation, derived, place) for derived in before),
+            *(column[row] for _, column in extra),
+            *(_given_cell(plan, Address(table, row, field)) for field in fields),
+            *(_result_cell(evaluation, derived, place) for derived in after),
         )
-    return Table(columns, tuple(rows), fixed=1)
+        for row, place in enumerate(_places(evaluation, table))
+    )
+    return Table(columns, cells, fixed=1)
 
 
 def pane_table(evaluation: Evaluation, pane: str, width: int) -> Table:
-    """The givens of a chapter, two beside each other where they fit, each with its value and origin."""
+    """The records of a pane, or the givens of a chapter with value and origin, two beside each other where they fit."""
     if pane == "margins":
         return margin_table(evaluation, width)
+    if pane in ROWS:
+        return record_table(evaluation, pane)
     names = list(table_givens(pane))
     height = -(-len(names) // 2) if width >= TWO_BESIDE else len(names)
     halves = [
@@ -75,8 +123,12 @@ def pane_table(evaluation: Evaluation, pane: str, width: int) -> Table:
 
 
 def _half_columns(halves: list[list[tuple[Cell, ...]]], width: int) -> Iterator[Column]:
-    """Name, value and origin of each half: names whole, values as wide as they are up to a limit, origins what is left."""
+    """Name, value and origin of each half: names whole, values as wide as they are up to a limit, origins what is left.
+
+    A blank stays behind each name, so that the cursor's pointer is not read as a comparison.
+    """
     needs = [[max(len(row[place].text) for row in half) for place in range(3)] for half in halves]
+    needs = [[name + 1, value, origin] for name, value, origin in needs]
     values = [min(need[1], LONGEST_VALUE) for need in needs]
     room = width - 3 * len(halves) - sum(need[0] for need in needs) - sum(values)
     for place, (need, value) in enumerate(zip(needs, values, strict=True)):
@@ -85,10 +137,11 @@ def _half_columns(halves: list[list[tuple[Cell, ...]]], width: int) -> Iterator[
         yield from (Column((), need[0]), Column((), value), Column((), origin))
 
 
-def margin_table(evaluation: Evaluation, width: int) -> Table:
-    """The asked margins, worst first, then those not asked."""
+def margin_table(evaluation: Evaluation, width: int, *, brief: bool = False) -> Table:
+    """The asked margins, worst first, then those not asked; `brief` leaves out quiet ones that are far from their bound."""
     name = max(len(limit.name) for limit in evaluation.graph.limits)
-    row_width = max([len(qubit) for qubit in evaluation.names if len(qubit) < 12] or [4])
+    names = [len(name) for name in evaluation.names if len(name) < 12]
+    row_width = max([*names, *(min(len(margin.row), LONGEST_ROW) for margin in evaluation.margins), 2])
     text = max(10, width - name - row_width - 7 - 8 - 8 - 6)
     columns = (
         Column(("margin",), name),
@@ -108,6 +161,7 @@ def margin_table(evaluation: Evaluation, width: int) -> Table:
             Cell(gap(evaluation, margin)),
         )
         for margin in evaluation.ranked
+        if not (brief and margin.limit.quiet and (margin.value or 0.0) > LOUD)
     ]
     rows += [
         (
@@ -146,12 +200,20 @@ def found_text(evaluation: Evaluation, address: Address) -> str:
     return " to ".join(dict.fromkeys(ends))
 
 
-def _listed(derived: Derived) -> bool:
-    return derived.shown and derived.per is Per.QUBIT and derived.key not in givens()
+def _listed(derived: Derived, table: str) -> bool:
+    return derived.shown and derived.per.value == table and derived.key not in givens()
 
 
-def _name_width(plan: Plan) -> int:
-    return min(16, max(4, *(len(str(row.name)) for row in plan.qubit)))
+def _places(evaluation: Evaluation, table: str) -> list[int | None]:
+    """Where each record of the plan stands in the columns of results; None for a dead qubit."""
+    rows = range(len(evaluation.plan.rows(table)))
+    places = {row: place for place, row in enumerate(evaluation.rows if table == "qubit" else rows)}
+    return [places.get(row) for row in rows]
+
+
+def _name_width(plan: Plan, table: str, name: str) -> int:
+    texts = [given_text(plan, Address(table, row, name)) for row in range(len(plan.rows(table)))]
+    return min(16, max(4, 0 if name == "name" else len(name), *(len(text) + 1 for text in texts)))
 
 
 def _result_column(derived: Derived) -> Column:
@@ -161,17 +223,17 @@ def _result_column(derived: Derived) -> Column:
     )
 
 
-def _given_column(plan: Plan, name: str) -> Column:
-    texts = [given_text(plan, Address("qubit", row, name)) for row in range(len(plan.qubit))]
+def _given_column(plan: Plan, table: str, name: str) -> Column:
+    texts = [given_text(plan, Address(table, row, name)) for row in range(len(plan.rows(table)))]
     return Column((name, ""), max(len(name), min(24, max(map(len, texts)))), right=False)
 
 
-def _result_cell(evaluation: Evaluation, derived: Derived, row: int | None) -> Cell:
-    if row is None:
+def _result_cell(evaluation: Evaluation, derived: Derived, place: int | None) -> Cell:
+    if place is None:
         return Cell("")
-    text = result_text(evaluation, derived.key, row)
+    text = result_text(evaluation, derived.key, place)
     tone = Tone.UNKNOWN if text == "?" else Tone.PLAIN
-    return Cell(text, tone, key=f"{derived.key}@{evaluation.names[row]}")
+    return Cell(text, tone, key=f"{derived.key}@{evaluation.tables[derived.per.value][place]}")
 
 
 def _worst_by_row(evaluation: Evaluation) -> dict[int | None, Cell]:

@@ -8,8 +8,6 @@ from planner.plan import ROWS, SECTIONS, table_givens
 from planner.references import references
 from planner.values import bounds_text
 
-LATER = "no result uses it yet"
-
 
 def dictionary() -> list[str]:
     """All words, one entry of two lines each, in the order of the file and of the results."""
@@ -40,7 +38,6 @@ def given_entry(key: str, given: Given) -> list[str]:
         bounds_of(given),
         f"usual: {given.sensible}" if given.sensible else "",
         missing_text(given),
-        LATER if given.later else "",
     ]
     return [first, "    " + "; ".join(part for part in parts if part)]
 
@@ -49,8 +46,7 @@ def help_line(key: str, given: Given) -> str:
     """One line on the given under the cursor."""
     locks = f" {given.locks.word}" if given.locks is not None else ""
     usual = f" {given.sensible}." if given.sensible else ""
-    later = f" ({LATER})" if given.later else ""
-    return f"{key}: {given.help}.{usual} {given.nature.value}{locks}{later}"
+    return f"{key}: {given.help}.{usual} {given.nature.value}{locks}"
 
 
 def kind_text(given: Given) -> str:

@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from planner.physics import clock, dephasing, gates, noise, nuclei, thermal, tones, zeeman
+from planner.physics import addressing, clock, coils, dephasing, gates, noise, nuclei, thermal, tones, zeeman
 
 LOCAL = np.array([[146.0, 0, 8], [151.2, 0, 9], [155.6, 0, 9], [160.9, 0, 10], [163.3, 0, 10], [168.8, 0, 11]]) * 1e-3
 AMPLITUDE = np.array([4.0, 4.6, 5.2, 5.0, 4.4, 3.8]) * 1e3
@@ -75,15 +75,20 @@ def evaluation(given: dict[str, np.ndarray]) -> tuple[np.ndarray, ...]:
         moment=one(1.5e-48), germanium=one(0.3), spinful=one(0.0775), share=one(0.02), nuclei=one(1e5)
     )
     barrier = nuclei.barrier_noise(model=under, typed=rows(11e3))
-    magnet = zeeman.vector_uncertainty(field_response=response, uncertainty=np.full((1, 3), 5e-9))
-    drift = noise.drift_noise(
-        field_slope=slope,
-        field=field,
-        drift=one(8.3e-12),
-        settle_slope=one(3.3e-9),
-        since_ramp=one(np.nan),
-        interval=interval,
+    no_coils, nothing_off = np.zeros((0, 3)), np.zeros(0)
+    magnet = coils.magnet_noise(
+        field_response=response,
+        noise=np.full((1, 3), 5e-9),
+        direction=no_coils,
+        is_off=nothing_off,
+        coil_noise=nothing_off,
     )
+    moves = {
+        "field_response": response, "field_slope": slope, "field": field, "interval": interval, "direction": no_coils,
+        "coil_field": nothing_off, "coil_rate": nothing_off,
+    }  # fmt: skip
+    own, settling = (coils.drifted(**moves, rate=one(rate)) for rate in (8.3e-12, 3.3e-9))
+    drift = coils.drift_after_ramp(own=own, settling=settling, since_ramp=one(np.nan))
     charge = noise.charge_amplitude(
         typed=given["amplitude"],
         own_relative=nothing,
@@ -203,6 +208,26 @@ def evaluation(given: dict[str, np.ndarray]) -> tuple[np.ndarray, ...]:
     need = thermal.blockade_need(temperature=one(0.095))
     distance = thermal.valley_distance(energy=energy, valley_splitting=given["valley"])
     part = noise.allowed_share(source_share=share, allowed_noise=stands)
+    settled = coils.settling_time(own=own, settling=settling, allowed=part)
+    away = tones.intermediate_frequency(frequency=frequency, oscillator=lo)
+    image = addressing.image_distance(frequency=frequency, oscillator=lo, in_use=in_use)
+    offset, largest = (
+        addressing.offset_size(intermediate=away),
+        addressing.largest_rabi(rabi_frequency=rabi, in_use=in_use),
+    )
+    driven = {
+        "frequency": frequency,
+        "rabi_frequency": rabi,
+        "largest": largest,
+        "drive_leak": one(1.0),
+        "in_use": in_use,
+    }
+    crossed = addressing.crosstalk_ratio(**driven)
+    imaged = addressing.image_ratio(**driven, oscillator=lo, image=one(1e-4))
+    leaked = addressing.leakage_ratio(offset=offset, largest=largest, leakage=one(1e-4))
+    flips = tuple(addressing.flip(ratio=ratio) for ratio in (crossed, imaged, leaked))
+    shift = addressing.crosstalk_phase(ratio=crossed, drive_leak=one(1.0))
+    spent = addressing.time_share(in_use=in_use, shots=shots, shot_time=shot_time, wait=one(4e-6), interval=interval)
     edge = tones.band_distance(frequency=frequency, low=one(1e9), high=one(1.8e10))
     margins = (
         edge / tones.band_need(guard=one(5e7), search_window=window),
@@ -217,4 +242,21 @@ def evaluation(given: dict[str, np.ndarray]) -> tuple[np.ndarray, ...]:
         blockade / need,
         distance / one(1.28e-24),
     )
-    return (lo, spacing, excited, tail, echo, aligned, whole, seen, seen_white, *margins)
+    return (
+        *(1e-3 / each for each in flips),
+        5e8 / offset,
+        0.05 / spent,
+        image,
+        settled,
+        shift,
+        lo,
+        spacing,
+        excited,
+        tail,
+        echo,
+        aligned,
+        whole,
+        seen,
+        seen_white,
+        *margins,
+    )

@@ -9,7 +9,7 @@ import pytest
 from scipy.optimize import minimize_scalar  # type: ignore[import-untyped]
 
 from planner.constants import BOHR_MAGNETON_HZ, MICRO_EV, PLANCK
-from planner.physics import noise
+from planner.physics import coils, noise
 from planner.physics.dephasing import rms_of_t2_star
 
 from . import assert_axes_agree, near, row
@@ -27,7 +27,13 @@ def drift(**changes: float) -> float:
         "since_ramp": np.nan,
         "interval": 1800.0,
     }
-    return float(noise.drift_noise(**{name: row(value) for name, value in (start | changes).items()})[0])
+    given = {name: row(value) for name, value in (start | changes).items()}
+    moves = {
+        "field_response": np.full((1, 3), np.nan), "field_slope": given["field_slope"], "field": given["field"],
+        "interval": given["interval"], "direction": np.zeros((0, 3)), "coil_field": np.zeros(0), "coil_rate": np.zeros(0),
+    }  # fmt: skip
+    own, settling = (coils.drifted(**moves, rate=given[rate]) for rate in ("drift", "settle_slope"))
+    return float(coils.drift_after_ramp(own=own, settling=settling, since_ramp=given["since_ramp"])[0])
 
 
 def test_drift_of_a_tenth_ppm_per_hour_for_half_an_hour_at_14_gigahertz_is_700_hertz() -> None:
@@ -165,15 +171,7 @@ def test_published_anchor_of_energy_noise_and_t2_star() -> None:
 
 def test_axes_of_studies() -> None:
     some, unsure = row(1.0, 2.0, 5.0), row(1.0, np.nan, 5.0)
-    assert_axes_agree(
-        noise.drift_noise,
-        field_slope=some,
-        field=row(0.5),
-        drift=row(1e-10),
-        settle_slope=row(1e-9),
-        since_ramp=row(5000.0),
-        interval=row(1800.0),
-    )
+    assert_axes_agree(coils.drift_after_ramp, own=some, settling=-some, since_ramp=row(5000.0))
     assert_axes_agree(noise.calibration_noise, contrast=row(0.3), wait=some, t2_star=some, shots=row(1000))
     assert_axes_agree(noise.scaled_tone, frequency=some, change=some)
     assert_axes_agree(noise.loose_noise, tone=unsure, drift=row(1e-7))

@@ -5,8 +5,7 @@
 from __future__ import annotations
 
 import asyncio
-from collections.abc import Callable, Coroutine, Iterator
-from difflib import unified_diff
+from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
 
@@ -14,97 +13,20 @@ import pytest
 from textual import events
 from textual.geometry import Region, Size
 
-from planner.plan import SECTIONS, address_of, stated, table_givens
+from planner.plan import ROWS, SECTIONS, address_of, table_givens
 from planner.planfile import load
 from planner.soundness import edited
 from planner.tui import app as editor
 from planner.tui import desk
-from planner.tui.actions import ACTIONS, RESTING
+from planner.tui.actions import ACTIONS, CHOOSING, RESTING
 from planner.tui.app import Planner
 from planner.tui.grid import Grid
-from planner.views.editing import NOT_ON_A_QUBIT, NOT_TYPED
+from planner.views.editing import NOT_TYPED
 from planner.views.tables import PANES, pane_title, qubit_table
 from tests.planmaking import BENCH, text_of
 
 from .harness import keys, painted, paste, settle
-
-PLANS = Path(__file__).parents[2] / "plans"
-Scenario = Callable[[Planner], Coroutine[Any, Any, None]]
-
-
-@pytest.fixture(autouse=True)
-def _no_signal_handlers(monkeypatch: pytest.MonkeyPatch) -> None:
-    """Signals and the watch over the keyboard belong to a process of the editor's own."""
-    monkeypatch.setattr(editor.terminal, "install_signal_handlers", lambda _app: None)
-
-
-@pytest.fixture
-def drafted(tmp_path: Path) -> Path:
-    return copied("sq6-03-drafted", tmp_path)
-
-
-@pytest.fixture
-def minimal(tmp_path: Path) -> Path:
-    return copied("minimal", tmp_path)
-
-
-def copied(name: str, folder: Path) -> Path:
-    path = folder / f"{name}.toml"
-    path.write_bytes((PLANS / f"{name}.toml").read_bytes())
-    return path
-
-
-def use(path: Path, scenario: Scenario, *, size: tuple[int, int] = (80, 24)) -> Planner:
-    """Opens the plan, goes through the scenario, and returns the app as it then is."""
-    app = Planner(load(path, keep_unknown=True))
-
-    async def session() -> None:
-        async with app.run_test(size=size):
-            await done(app)
-            await scenario(app)
-            await done(app)
-
-    asyncio.run(session())
-    return app
-
-
-async def done(app: Planner) -> None:
-    """Returns when the worker has reported and everything is painted."""
-    await settle(app)
-    await app.workers.wait_for_complete()
-    await painted(app)
-
-
-async def act(app: Planner, letter: str) -> None:
-    await keys(app, "space", letter)
-
-
-async def retype(app: Planner, text: str) -> None:
-    """In a prompt: another text in place of the proposed one."""
-    assert app.foot._prompt is not None
-    await keys(app, *["backspace"] * len(app.foot._prompt[1].text))
-    await paste(app, text)
-    await keys(app, "enter")
-
-
-def screen(app: Planner) -> list[str]:
-    return ["".join(segment.text for segment in strip).rstrip() for strip in app.screen._compositor.render_strips()]
-
-
-def foot(app: Planner) -> str:
-    """The lines of help and messages, unfolded."""
-    return " ".join(line for line in screen(app)[-3:-1] if line)
-
-
-def typed(app: Planner, key: str) -> str | None:
-    value = stated(app.session.plan, address_of(app.session.plan, key))
-    return value if value is None or isinstance(value, str) else value.text
-
-
-def changed_lines(before: bytes, after: bytes) -> list[str]:
-    lines = unified_diff(before.decode().splitlines(), after.decode().splitlines(), n=0, lineterm="")
-    return [line for line in lines if line[0] in "+-" and not line.startswith(("+++", "---"))]
-
+from .inprocess import act, changed_lines, copied, done, foot, retype, screen, typed, use
 
 # -- what is shown
 
@@ -116,7 +38,7 @@ def test_it_opens_on_the_field_with_the_worst_margin_on_top(drafted: Path) -> No
         assert "420 mT along c1" in lines[0] and "wafer passed" in lines[0]
         assert lines[1].startswith("1 short")
         assert lines[2].startswith("valley Q4 0.34 short: ")
-        assert ">420 mT" in "\n".join(lines)
+        assert " >420 mT" in "\n".join(lines)
         assert foot(app).startswith("magnet.field: ")
         assert lines[-1] == RESTING
 
@@ -184,7 +106,7 @@ def test_another_size_rearranges_at_once(drafted: Path) -> None:
         lines = await resized(app, 60, 16)
         assert lines[0].endswith(" saved") and len(lines[0]) == 60
         assert lines[2].startswith("valley Q4 0.34 short")
-        assert any(">420 mT" in line for line in lines)
+        assert any(" >420 mT" in line for line in lines)
         await act(app, "n")
         lines = await resized(app, 40, 10)
         lines = await resized(app, 80, 24)
@@ -193,7 +115,7 @@ def test_another_size_rearranges_at_once(drafted: Path) -> None:
         assert len(app.session.plan.qubit) == 7
         await act(app, "h")
         lines = await resized(app, 100, 30)
-        assert lines[0].startswith("HELP")
+        assert lines[0].startswith("-- HELP")
         await keys(app, "escape")
         await painted(app)
         assert len(screen(app)[0]) == 100 and app.focused is app.desk.qubits
@@ -219,7 +141,7 @@ def test_tab_goes_through_all_panes_and_back(drafted: Path) -> None:
             await keys(app, "tab")
             await painted(app)
             assert f"-- {pane_title(app.desk.stop)} " in "\n".join(screen(app))
-            assert isinstance(app.focused, Grid) and app.focused.cursor_key
+            assert isinstance(app.focused, Grid) and (app.focused.cursor_key or app.desk.stop == "pair")
         assert sorted(seen) == sorted(desk.STOPS) and app.desk.stop == "magnet"
         for stop in reversed(seen):
             await keys(app, "shift+tab")
@@ -231,7 +153,7 @@ def test_tab_goes_through_all_panes_and_back(drafted: Path) -> None:
 def test_the_help_and_the_actions_line_come_from_the_one_table(drafted: Path) -> None:
     async def scenario(app: Planner) -> None:
         await keys(app, "space")
-        assert screen(app)[-1] == "  ".join(f"{a.letter} {a.word}" for a in ACTIONS) + "  Esc"
+        assert screen(app)[-1] == "  ".join(f"{a.letter} {a.word}" for a in ACTIONS) and len(screen(app)[-1]) <= 80
         await keys(app, "h")
         await painted(app)
         shown = screen(app)
@@ -248,6 +170,38 @@ def test_the_help_and_the_actions_line_come_from_the_one_table(drafted: Path) ->
     use(drafted, scenario)
 
 
+def test_in_the_smallest_window_the_help_scrolls_and_the_actions_are_all_there(drafted: Path) -> None:
+    async def scenario(app: Planner) -> None:
+        await keys(app, "space")
+        await painted(app)
+        shown = "  ".join(screen(app)[-2:])
+        assert all(f"{action.letter} {action.word}" in shown for action in ACTIONS)
+        await keys(app, "h", "end")
+        await painted(app)
+        shown = "\n".join(screen(app))
+        assert "leave the editor" in shown and "arrows, Home" not in shown and " of " in screen(app)[0]
+        await keys(app, "home")
+        await painted(app)
+        assert "arrows, Home" in "\n".join(screen(app))
+        await keys(app, "escape")
+        await painted(app)
+        assert screen(app)[-1] == RESTING
+
+    use(drafted, scenario, size=(60, 16))
+
+
+def test_a_line_too_long_for_the_foot_is_marked_where_it_is_cut(drafted: Path) -> None:
+    async def scenario(app: Planner) -> None:
+        app.foot.say("word " * 40)
+        await painted(app)
+        assert len(screen(app)) == 24 and screen(app)[-2].endswith("word~") and len(screen(app)[-2]) <= 80
+        app.foot.say("word " * 16 + "end")
+        await painted(app)
+        assert foot(app).endswith("end")
+
+    use(drafted, scenario)
+
+
 def test_every_action_can_be_done_from_its_letter(drafted: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     methods: list[str] = []
     action_do = Planner.action_do
@@ -257,7 +211,7 @@ def test_every_action_can_be_done_from_its_letter(drafted: Path, monkeypatch: py
     async def scenario(app: Planner) -> None:
         for action in ACTIONS:
             await act(app, action.letter)
-            if action.method in {"save_as", "add_qubit", "help"}:  # these wait for a key
+            if action.method in {"save_as", "add_row", "why", "help"}:  # these wait for a key
                 await keys(app, "escape")
         assert methods == [action.method for action in ACTIONS]
 
@@ -269,7 +223,7 @@ def test_the_actions_line_closes_with_escape_and_waits_on_other_letters(drafted:
         before = foot(app)
         await act(app, "q")
         await painted(app)
-        assert screen(app)[-1].endswith("Esc")
+        assert foot(app) == CHOOSING and screen(app)[-1].startswith("u undo  r redo")
         await keys(app, "escape")
         await painted(app)
         assert screen(app)[-1] == RESTING and foot(app) == before
@@ -359,7 +313,7 @@ def test_results_and_margins_are_not_typed(drafted: Path) -> None:
         await keys(app, "shift+tab", "5")
         assert app.desk.stop == "margins" and foot(app) == NOT_TYPED
         await keys(app, "shift+tab", "right", "5")
-        assert app.desk.stop == "qubits" and foot(app) == NOT_TYPED
+        assert app.desk.stop == "qubit" and foot(app) == NOT_TYPED
         assert not app.session.past
 
     use(drafted, scenario)
@@ -372,7 +326,7 @@ def test_up_down_and_tab_take_the_text_and_go_on(drafted: Path) -> None:
         await keys(app, *"1 deg", "down")
         assert app.desk.pane.cursor_key == "magnet.azimuth"
         await keys(app, *"6 deg", "tab")
-        assert app.desk.stop == "clock"
+        assert app.desk.stop == "coil"
         assert [typed(app, f"magnet.{name}") for name in ("azimuth", "elevation")] == ["6 deg", "1 deg"]
         assert len(app.session.past) == 3
 
@@ -387,12 +341,12 @@ def test_an_empty_text_brings_the_default_back(drafted: Path) -> None:
         await keys(app, "enter")
         await painted(app)
         assert typed(app, "magnet.mode") is None
-        assert any(line.split()[:3] == ["mode", ">driven", "default"] for line in screen(app))
+        assert any(line.startswith(" mode             >driven      defau") for line in screen(app))
 
     use(drafted, scenario)
 
 
-@pytest.mark.parametrize("pane", [pane for pane in PANES if pane != "margins"], ids=lambda pane: pane or "plan")
+@pytest.mark.parametrize("pane", [pane for pane in PANES if pane in SECTIONS], ids=lambda pane: pane or "plan")
 def test_every_given_of_every_pane_is_reached_with_the_arrows_and_edited(tmp_path: Path, pane: str) -> None:
     path = tmp_path / "bench.toml"
     path.write_text(text_of(BENCH))
@@ -437,7 +391,7 @@ async def example_typed(app: Planner, grid: Grid, key: str) -> None:
 
 def test_every_given_of_a_qubit_is_reached_in_its_row(drafted: Path) -> None:
     async def scenario(app: Planner) -> None:
-        app.visit("qubits")
+        app.visit("qubit")
         await settle(app)
         await keys(app, "down", "home")
         reached = {app.desk.qubits.cursor_key}
@@ -453,7 +407,7 @@ def test_every_given_of_a_qubit_is_reached_in_its_row(drafted: Path) -> None:
 
 
 def test_panes_cover_all_tables_of_givens() -> None:
-    assert set(SECTIONS) == set(PANES) - {"margins"}
+    assert {*SECTIONS, *ROWS} == {*desk.STOPS} - {"margins"}
 
 
 # -- undo, redo, and what they show
@@ -559,87 +513,15 @@ def test_a_thousand_qubits_are_edited_like_six(tmp_path: Path, monkeypatch: pyte
         await keys(app, "enter")
         await done(app)
         assert len(painted_lines) < 100  # the lines in view, not the rows of the plan
-        app.visit("qubits")
+        app.visit("qubit")
         await settle(app)
         app.desk.qubits.move_to("qubit.N990.name")
         await keys(app, "pagedown", "pagedown", "right")
         await painted(app)
         assert app.desk.qubits.cursor_key == "larmor.frequency@N998"
-        assert any(line.startswith(" N998>") for line in screen(app))
+        assert any(line.startswith(" N998 >") for line in screen(app))
 
     use(path, scenario)
-
-
-# -- qubits come and go
-
-
-def test_a_qubit_is_added_as_a_copy_below_the_cursor(drafted: Path) -> None:
-    async def scenario(app: Planner) -> None:
-        app.visit("qubits")
-        await settle(app)
-        await keys(app, "down", "space", "n")
-        await painted(app)
-        assert screen(app)[-3].startswith("name of the new qubit, a copy of Q2: Q7")
-        await keys(app, "enter")
-        await done(app)
-        assert [row.name for row in app.session.plan.qubit] == ["Q1", "Q2", "Q7", "Q3", "Q4", "Q5", "Q6"]
-        assert app.desk.qubits.cursor_key == "qubit.Q7.name" and app.desk.qubits.has_focus
-        assert typed(app, "qubit.Q7.valley_splitting") == typed(app, "qubit.Q2.valley_splitting")
-
-    use(drafted, scenario)
-
-
-@pytest.mark.parametrize(("name", "part"), [("Q1", "twice"), ("a.b", "can't be a name"), ("  ", "name")])
-def test_a_name_that_can_not_be_is_refused(drafted: Path, name: str, part: str) -> None:
-    async def scenario(app: Planner) -> None:
-        await act(app, "n")
-        await retype(app, name)
-        await painted(app)
-        assert part in foot(app)
-        assert not app.session.past
-
-    use(drafted, scenario)
-
-
-def test_a_prompt_can_be_given_up_and_takes_no_control_characters(drafted: Path) -> None:
-    async def scenario(app: Planner) -> None:
-        await act(app, "n")
-        await paste(app, "\x1b[31m\nred")
-        await painted(app)
-        assert "Q7\ufffd[31m red" in screen(app)[-3] and "\x1b" not in "".join(screen(app))
-        await keys(app, "escape")
-        assert not app.session.past and app.focused is app.desk.pane
-
-    use(drafted, scenario)
-
-
-def test_a_qubit_is_removed_under_the_cursor_and_brought_back(drafted: Path) -> None:
-    async def scenario(app: Planner) -> None:
-        app.visit("qubits")
-        await settle(app)
-        await keys(app, "down", "down", "space", "x")
-        await done(app)
-        assert [row.name for row in app.session.plan.qubit] == ["Q1", "Q2", "Q4", "Q5", "Q6"]
-        assert foot(app) == "removed Q3; Space u brings it back"
-        await act(app, "u")
-        assert app.session.plan == app.session.document.plan
-        await keys(app, "down")
-        assert not foot(app).startswith("removed")
-
-    use(drafted, scenario)
-
-
-def test_no_qubit_is_removed_while_the_cursor_is_elsewhere_nor_the_last(minimal: Path) -> None:
-    async def scenario(app: Planner) -> None:
-        await act(app, "x")
-        assert foot(app) == NOT_ON_A_QUBIT
-        app.visit("qubits")
-        await settle(app)
-        await act(app, "x")
-        assert "at least one" in foot(app)
-        assert len(app.session.plan.qubit) == 1
-
-    use(minimal, scenario)
 
 
 # -- saving and leaving

@@ -3,11 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
+from pathlib import Path
 
 import pytest
 
 from planner.evaluate import Evaluation, evaluate
-from planner.plan import Address, addresses, key_of, table_givens
+from planner.graph import givens
+from planner.plan import ROWS, Address, addresses, key_of, table_givens
+from planner.planfile import load
 from planner.views.table import Cell, Table, Tone
 from planner.views.tables import (
     PANES,
@@ -18,8 +21,11 @@ from planner.views.tables import (
     pane_table,
     pane_title,
     qubit_table,
+    record_table,
 )
 from tests.planmaking import Entry, plan_of, second
+
+PLANS = Path(__file__).parents[2] / "plans"
 
 
 def evaluation_of(changes: Mapping[str, Entry] | None = None) -> Evaluation:
@@ -48,7 +54,7 @@ def test_every_given_that_has_a_pane_is_one_editable_cell() -> None:
 
 
 @pytest.mark.parametrize("width", [60, 77, 78, 80, 120])
-@pytest.mark.parametrize("pane", [pane for pane in PANES if pane != "margins"], ids=pane_title)
+@pytest.mark.parametrize("pane", [pane for pane in PANES if pane != "margins" and pane not in ROWS], ids=pane_title)
 def test_a_pane_fits_its_width_with_names_whole(pane: str, width: int) -> None:
     table = pane_table(evaluation_of(), pane, width)
     assert all(len(row) == len(table.columns) for row in table.rows)
@@ -169,3 +175,39 @@ def test_cells_hold_no_control_characters() -> None:
     tables = [qubit_table(evaluation), *(pane_table(evaluation, pane, 80) for pane in PANES)]
     assert all(cell.text.isprintable() for table in tables for cell in cells(table))
     assert cell(tables[1 + PANES.index("magnet")], "magnet.drift_driven").edit == "5 ppm/h; [b]x\ufffd[/b]"
+
+
+def test_records_have_a_row_each_with_results_and_givens() -> None:
+    """500 mT through a coil of 100 mT/A are 5 A."""
+    evaluation = evaluation_of(
+        {"coil.z.direction": "1, 0, 0", "coil.z.field_per_current": "100 mT/A", "coil.z.rating": "6 T; datasheet"}
+    )
+    table = record_table(evaluation, "coil")
+    assert len(table.rows) == 1 and table.fixed == 1 and len(table.rows[0]) == len(table.columns)
+    assert table.rows[0][0].text == "z" and cell(table, "coil.current@z").text == "5.00"
+    headings = [column.heading[0] for column in table.columns]
+    assert headings[:1] == [""] and headings[-5:] == ["direction", "rating", "field_per_current", "step", "mode"]
+    assert (cell(table, "coil.z.rating").text, cell(table, "coil.z.rating").editable) == ("6 T", True)
+
+
+def test_every_result_that_is_shown_stands_in_the_table_of_its_records() -> None:
+    evaluation = evaluate(load(PLANS / "sq6-03.toml").plan)
+    found = {name: [cell.key for cell in cells(record_table(evaluation, name))] for name in ROWS}
+    for derived in evaluation.graph.order:
+        if derived.shown and derived.per.value in ROWS and derived.key not in givens():
+            rows = evaluation.tables[derived.per.value]
+            assert {f"{derived.key}@{row}" for row in rows} <= set(found[derived.per.value])
+
+
+def test_records_without_names_begin_with_their_first_given() -> None:
+    evaluation = evaluate(load(PLANS / "sq6-03.toml").plan)
+    table = record_table(evaluation, "phase_noise")
+    assert table.columns[0].heading[0] == "offset"
+    assert [row[0].text for row in table.rows][:2] == ["100 Hz", "1 kHz"] and table.rows[1][0].key.endswith(".2.offset")
+
+
+@pytest.mark.parametrize("table", [table for table in ROWS if table != "qubit"])
+def test_without_records_one_line_says_how_to_add_one(table: str) -> None:
+    shown = pane_table(evaluation_of(), table, 80)
+    assert [entry.text for entry in cells(shown)] == [f"no {pane_title(table)}: Space n adds a row"]
+    assert not any(entry.editable or entry.key for entry in cells(shown))
