@@ -6,9 +6,9 @@ vector behind it and studies' axes before it. What can't be known is nan and car
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field, replace
-from functools import partial
+from functools import lru_cache, partial
 from itertools import chain
 from operator import attrgetter, is_not
 from typing import Any, cast
@@ -21,7 +21,7 @@ from planner.graph import HOST, PAIR_PLACES, givens
 from planner.kinds import Quantity
 from planner.materials import material
 from planner.physics import Array
-from planner.plan import ROWS, Plan, unstated
+from planner.plan import ROWS, Plan, unstated, usual
 from planner.values import Value
 
 
@@ -114,14 +114,27 @@ class Column:
         return not self.why and bool(switch.on(float(self.values.flat[0])))
 
 
-def given_column(plan: Plan, key: str, rows: Sequence[Any]) -> Column:
-    """The column of a given; one of a list of tables has a value for each of these rows of the plan."""
-    table, _, name = key.rpartition(".")
-    if table not in ROWS:
-        return _column(plan, key, "", [getattr(plan.chapter(table), name)], unstated(plan, table, name).value)
-    shared = getattr(plan.all_qubits, name) if table == "qubit" else None
-    fallback = unstated(plan, table, name).value if shared is None else shared
-    return _column(plan, key, table, list(map(attrgetter(name), rows)), fallback)
+def given_columns(plan: Plan, keys: Iterable[str], tables: Mapping[str, Sequence[Any]]) -> dict[str, Column]:
+    """The columns of these givens; those of a list of tables have a value for each of its rows in `tables`."""
+    columns: dict[str, Column] = {}
+    by_table: dict[str, list[str]] = {}
+    for key in keys:
+        table, _, name = key.rpartition(".")
+        if table in ROWS:
+            by_table.setdefault(table, []).append(name)
+        else:
+            value = getattr(plan.chapter(table), name)
+            columns[key] = _plan_column(key, value) if value is not None else _usual_column(key, plan.chip.material)
+    for table, names in by_table.items():
+        rows = tables[table]
+        fields = (
+            zip(*map(attrgetter("__class__", *names), rows), strict=True) if rows else iter([()] * (1 + len(names)))
+        )
+        for name, stated_values in zip(names, list(fields)[1:], strict=True):
+            shared = getattr(plan.all_qubits, name) if table == "qubit" else None
+            fallback = unstated(plan, table, name).value if shared is None else shared
+            columns[f"{table}.{name}"] = _column(plan, f"{table}.{name}", table, stated_values, fallback)
+    return columns
 
 
 def host_columns(plan: Plan) -> dict[str, Column]:
@@ -159,7 +172,22 @@ def swept_column(column: Column, values: Array, row: int | None, *, zero_unset: 
     return replace(column, values=spread, why=why)
 
 
-def _column(plan: Plan, key: str, table: str, stated: list[Value | None], fallback: Value | None) -> Column:
+def _usual_column(key: str, material_name: str | None) -> Column:
+    """The column of a given of the plan that nobody typed: the material's value, the default, or nothing."""
+    table, _, name = key.rpartition(".")
+    return _plan_column(key, usual(table, name, material_name).value)
+
+
+@lru_cache(maxsize=4096)
+def _plan_column(key: str, value: Value | None) -> Column:
+    """The column of one value of the plan, kept since an edit changes one of them."""
+    given = givens()[key]
+    if given.form is not Form.QUANTITY:
+        return Column(np.full(1, np.nan), "", words=("" if value is None else str(value),))
+    return _numbers(key, given, [value], "", max(given.sizes))
+
+
+def _column(plan: Plan, key: str, table: str, stated: Sequence[Value | None], fallback: Value | None) -> Column:
     given = givens()[key]
     if given.form is not Form.QUANTITY:
         usual = "" if fallback is None else str(fallback)
@@ -187,6 +215,7 @@ def _numbers(key: str, given: Given, entries: Sequence[Value | None], table: str
     spreads = list(map(_TOLERANCE, quantities))
     stated = any(map(_is_stated, spreads))
     tolerance = _array([spread or 0.0 for spread in spreads], size, scalar=scalar) if stated else None
+    array.flags.writeable = False  # the columns of values that nobody typed are kept and shared
     why = dict.fromkeys(absent, Reason(NOT_TYPED, key))
     return Column(array, table, 0 if scalar else 1, why, tolerance=tolerance)
 

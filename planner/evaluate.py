@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator, Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from planner.columns import Column, Reason, given_column, host_columns, pair_columns, swept_column
+from planner.columns import Column, Reason, given_columns, host_columns, pair_columns, swept_column
 from planner.declare import Derived, Input, Lock
 from planner.graph import Graph, givens, graph
 from planner.kinds import Quantity
@@ -92,11 +92,11 @@ def evaluate(plan: Plan, swept: Mapping[str, Array] | None = None, *, ranges: bo
     decide which results there are, for words, and for unknown keys.
     """
     wiring = graph()
-    roles = given_column(plan, "qubit.role", plan.qubit).words
+    roles = given_columns(plan, ["qubit.role"], {"qubit": plan.qubit})["qubit.role"].words
     rows = tuple(row for row, role in enumerate(roles) if role != "dead")
     tables = {table: plan.rows(table) for table in ROWS} | {"qubit": tuple(plan.qubit[row] for row in rows)}
     names = {table: _names(table, found) for table, found in tables.items()} | {"": ("",)}
-    columns = {key: given_column(plan, key, tables.get(key.partition(".")[0], ())) for key in wiring.needed}
+    columns = given_columns(plan, wiring.needed, tables)
     columns |= host_columns(plan) | pair_columns(plan, names["qubit"])
     leads = leads_of(plan, rows) if ranges and not swept else ()
     columns = {key: moved(column, key, leads) for key, column in columns.items()} if leads else columns
@@ -145,6 +145,8 @@ class _Scope:
 
     def column(self, derived: Derived) -> Column:
         table, rows, trailing = derived.per.value, len(self.names[derived.per.value]), derived.trailing
+        if not rows:
+            return Column(np.zeros((0, *trailing)), table, len(trailing), found=True)
         if derived.only is not None and not self.columns[derived.only.key].on(derived.only):
             nothing = np.full((rows, *trailing), np.nan)
             reason = Reason(derived.off.reason, derived.off.given)
@@ -201,25 +203,23 @@ class _Scope:
         why: dict[int, Reason] = {}
         for source in sources:
             if not source.optional and source.word is None and self.columns[source.key].why:
-                for row, reason in self.spread(source, table):
-                    why.setdefault(row, reason)
+                why = {**self.spread(source, table), **why}
         return why
 
-    def spread(self, source: Input, table: str) -> Iterator[tuple[int, Reason]]:
+    def spread(self, source: Input, table: str) -> Mapping[int, Reason]:
         """The reasons of one source, on the rows of the result that need it."""
         column = self.columns[source.key]
         exempt = self.exempt(source.unless, table)
         if column.table == table:
-            yield from ((row, reason) for row, reason in column.why.items() if row not in exempt)
-            return
+            return {row: reason for row, reason in column.why.items() if row not in exempt} if exempt else column.why
         if column.table == "":
             reason = column.why[0]
         else:
             row = next((row for row in self.counted(column.table) if row in column.why), None)
             if row is None:
-                return
+                return {}
             reason = column.why[row].of(self.names[column.table][row])
-        yield from ((row, reason) for row in range(len(self.names[table])) if row not in exempt)
+        return {row: reason for row in range(len(self.names[table])) if row not in exempt}
 
     def exempt(self, key: str, table: str) -> frozenset[int]:
         """Rows that type this given and so don't need the other source."""

@@ -134,6 +134,11 @@ class Bench:
 
 def judge(bench: Bench, limits: Sequence[Limit]) -> tuple[tuple[Margin, ...], dict[str, str]]:
     """The asked margins over the rows in use, and the reasons of those that are not asked."""
+    with np.errstate(divide="ignore", invalid="ignore"):
+        return _judge(bench, limits)
+
+
+def _judge(bench: Bench, limits: Sequence[Limit]) -> tuple[tuple[Margin, ...], dict[str, str]]:
     margins: list[Margin] = []
     not_asked: dict[str, str] = {}
     for limit in limits:
@@ -216,8 +221,7 @@ def _judged(bench: Bench, limit: Limit, compare: Compare) -> Judged:
 
 
 def _ratio(allowed: Array, expected: Array) -> Array:
-    with np.errstate(divide="ignore", invalid="ignore"):
-        ratio = np.maximum(allowed, 0.0) / expected
+    ratio = np.maximum(allowed, 0.0) / expected
     ratio = np.where((expected == 0) & (allowed >= 0), np.inf, ratio)  # nothing expected is within anything allowed
     return np.minimum(ratio, LARGEST_MARGIN)
 
@@ -225,7 +229,9 @@ def _ratio(allowed: Array, expected: Array) -> Array:
 def _at(column: Column, rows: Rows, *, ranged: bool) -> Array:
     """Values at these rows, along the leading axis (at least one entry)."""
     values = column.values if column.has_lead and ranged else column.base()[None]
-    return np.repeat(values, len(rows), axis=-1) if column.of_plan else values[..., rows]
+    if column.of_plan:
+        return np.repeat(values, len(rows), axis=-1)
+    return values if len(rows) == values.shape[-1] else values[..., rows]
 
 
 def _softened(

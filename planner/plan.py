@@ -213,11 +213,12 @@ def resolved(plan: Plan, address: Address) -> Resolved:
 
 def unstated(plan: Plan, table: str, name: str) -> Resolved:
     """The value that stands in for a given that nobody typed: the material's, else the default, else none."""
-    return _unstated(table, name, plan.chip.material)
+    return usual(table, name, plan.chip.material)
 
 
 @cache
-def _unstated(table: str, name: str, material_name: str | None) -> Resolved:
+def usual(table: str, name: str, material_name: str | None) -> Resolved:
+    """The value of a given that nobody typed, for a plan of this material."""
     given = table_givens(table)[name]
     if given.missing is Missing.MATERIAL and material_name is not None:
         entry = material(material_name).values.get(f"{table}.{name}")

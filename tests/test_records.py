@@ -200,7 +200,7 @@ def test_pairs() -> None:
     assert of(evaluation, "pair.idle_phase") == pytest.approx(2 * math.pi * 10e3 * 1e-6)
     error = of(evaluation, "pair.error")
     assert margin(evaluation, "pair") == ("P", pytest.approx(0.01 / error), "short" if error > 0.01 else "clear")
-    assert of(evaluation, "pair.share", 1) == pytest.approx((1 - (1 - 2 * error) ** 3) / 2)
+    assert of(evaluation, "pair.share", 1) == pytest.approx((1 - (1 - 4 * error / 3) ** 3) / 2)
     without = evaluated(TWO, PAIR)
     assert of(without, "pair.share") == 0
     assert of(evaluation, "coherence.sequence_error") > of(without, "coherence.sequence_error")

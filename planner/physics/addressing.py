@@ -7,6 +7,7 @@ unless their drives are more than sixteen times stronger.
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import NDArray
 
 from planner.declare import law
 from planner.kinds import ANGLE, COUNT, FRACTION, FREQUENCY, NUMBER, RATIO, TIME
@@ -145,13 +146,24 @@ def _worst_ratio(tone: Array, frequency: Array, strength: Array, in_use: Array) 
     if not used.size:
         return result
     near = np.arange(-min(NEAREST, used.size), min(NEAREST, used.size) + 1)
+    done: dict[bytes, Array] = {}  # along an axis of ranges most entries are the plan itself
     for index in np.ndindex(shape[:-1]):
-        order = used[np.argsort(frequencies[index][used])]
-        place = np.searchsorted(frequencies[index][order], tones[index])[:, None] + near
-        inside = (place >= 0) & (place < order.size)
-        others = order[np.clip(place, 0, order.size - 1)]
-        own = others == np.arange(shape[-1])[:, None]
-        distance = np.abs(tones[index][:, None] - frequencies[index][others])
-        ratio = strengths[index][others] / np.maximum(distance, 1e-9)
-        result[index] = np.where(inside & ~own, ratio, 0.0).max(axis=-1)
+        inputs = (tones[index], frequencies[index], strengths[index])
+        key = b"".join(each.tobytes() for each in inputs)
+        if key not in done:
+            done[key] = _worst_of_row(*inputs, used, near)
+        result[index] = done[key]
     return np.where(np.isnan(tones), np.nan, result)
+
+
+def _worst_of_row(
+    tone: Array, frequency: Array, strength: Array, used: NDArray[np.intp], near: NDArray[np.intp]
+) -> Array:
+    """`_worst_ratio` of one entry of the axes before the rows."""
+    order = used[np.argsort(frequency[used])]
+    place = np.searchsorted(frequency[order], tone)[:, None] + near
+    inside = (place >= 0) & (place < order.size)
+    others = order[np.clip(place, 0, order.size - 1)]
+    own = others == np.arange(tone.size)[:, None]
+    distance = np.abs(tone[:, None] - frequency[others])
+    return np.where(inside & ~own, strength[others] / np.maximum(distance, 1e-9), 0.0).max(axis=-1)

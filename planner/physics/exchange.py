@@ -40,7 +40,8 @@ def exchange_gate_error(
     A phase p between singlet and triplets costs (3/10)(1 - cos p), averaged over Gaussian p with the rms of free 1/f noise
     over the gate. A frequency difference D turns singlet and unpolarised triplet about a tilted axis: with the overlap t of
     both evolutions in that plane the infidelity is (16 - (2 + t)^2)/20, averaged over Gaussian D (Coish and Loss, PRB 72,
-    125337 (2005), for the plane). Both are small and add.
+    125337 (2005), for the plane). Both are small and add; noise common to both qubits turns the polarised triplets against each
+    other and is not counted here.
     Formula: none; the two averages described above, the second by Gauss-Hermite.
     """
     phase = 2 * np.pi * gate_time * flicker_rms(amplitude=exchange_noise, lowest=lowest, time=gate_time)
@@ -64,14 +65,17 @@ def idle_exchange_phase(*, residual: Array, wait: Array) -> Array:
     frequency=FREQUENCY,
 )
 def exchange_share(*, error: Array, first: Array, second: Array, gates: Array, frequency: Array) -> Array:
-    """Share of the sequence error that a qubit's exchange gates take, by its worst pair: (1 - (1 - 2e)^n)/2.
+    """Share of the sequence error that a qubit's exchange gates take, by its worst pair: (1 - (1 - 4e/3)^n)/2.
 
+    A depolarised pair of average infidelity e (dimension 4, so 3/4 of the depolarised share) leaves either qubit
+    depolarised by 4e/3; these compose over n gates like the qubit's own.
     Formula: none; e is the largest error of the pairs that hold the qubit, 0 where it is in none.
     """
     rows = np.arange(frequency.shape[-1])
     holds = (first[..., None, :] == rows[:, None]) | (second[..., None, :] == rows[:, None])
     worst = np.where(holds, error[..., None, :], 0.0).max(axis=-1, initial=0.0)
-    return np.where(gates > 0, -np.expm1(gates * np.log1p(-2 * np.minimum(worst, 0.5 - 1e-16))) / 2, 0.0) + 0 * rows
+    kept = np.log1p(-np.minimum(4 * worst / 3, 1 - 1e-16))
+    return np.where(gates > 0, -np.expm1(gates * kept) / 2, 0.0) + 0 * rows
 
 
 @law(FRACTION, reference="nielsen2002", place="composition of depolarised gates", allowed=FRACTION, exchange=FRACTION)
