@@ -100,9 +100,9 @@ def gap(evaluation: Evaluation, margin: Margin) -> str:
 def unit_of(evaluation: Evaluation, margin: Margin) -> str:
     """The unit in which a margin's sides are shown: that of the given it compares with, else the one that reads best."""
     for key in (margin.compare.allowed, margin.compare.expected):
-        if key in givens():
-            table, _, name = key.rpartition(".")
-            shown = unit_shown(evaluation.plan, Address(table, None, name)) if table in SECTIONS else ""
+        table, _, name = key.rpartition(".")
+        if key in givens() and table in SECTIONS:
+            shown = unit_shown(evaluation.plan, Address(table, None, name))
             return shown if shown in margin.compare.kind.units else margin.compare.kind.first_unit
     return best_unit(margin.compare.kind, max(abs(margin.allowed or 0), abs(margin.expected or 0)))
 
