@@ -8,6 +8,7 @@ from planner.views.rows import counts, device_line, field_line, headline, passed
 from planner.views.table import Table
 from planner.views.tables import margin_table, qubit_table
 
+GAPS = 6  # the second blank between columns, which the editor does not have
 FIRST_COLUMNS = 7  # name, five results, the worst margin
 NARROWEST, LOWEST = 60, 16  # columns and lines below which a full screen says nothing useful
 
@@ -42,24 +43,34 @@ def first_screen(evaluation: Evaluation, following: TypeNext | None, width: int 
         "",
         *text_lines(narrow),
         "",
-        *text_lines(margin_table(evaluation, width, brief=True)),
+        *text_lines(margin_table(evaluation, width - GAPS, brief=True), cut=True),
     ]
     return [line[:width].rstrip() for line in lines]
 
 
-def text_lines(table: Table) -> list[str]:
-    """A table as plain lines, headings first, columns two blanks apart."""
+def text_lines(table: Table, *, cut: bool = False) -> list[str]:
+    """A table as plain lines, headings first, columns two blanks apart.
+
+    Columns are wide enough for every cell; with `cut` they keep their width and longer cells end in '~'.
+    """
     height = max((len(column.heading) for column in table.columns), default=0)
     heads = [
         [column.heading[line] if line < len(column.heading) else "" for column in table.columns]
         for line in range(height)
     ]
-    return [_line(table, texts) for texts in heads] + [_line(table, [cell.text for cell in row]) for row in table.rows]
+    texts = [*heads, *([cell.text for cell in row] for row in table.rows)]
+    widths = [column.width for column in table.columns]
+    if not cut:
+        widths = [max([width, *map(len, each)]) for width, each in zip(widths, zip(*texts, strict=True), strict=True)]
+    return [_line(table, widths, each) for each in texts]
 
 
-def _line(table: Table, texts: list[str]) -> str:
+def _line(table: Table, widths: list[int], texts: list[str]) -> str:
+    fitted = (
+        text if len(text) <= width else text[: width - 1] + "~" for text, width in zip(texts, widths, strict=True)
+    )
     padded = (
-        f"{text:>{column.width}}" if column.right else f"{text:<{column.width}}"
-        for text, column in zip(texts, table.columns, strict=True)
+        f"{text:>{width}}" if column.right else f"{text:<{width}}"
+        for text, column, width in zip(fitted, table.columns, widths, strict=True)
     )
     return "  ".join(padded).rstrip()
