@@ -16,7 +16,7 @@ from planner.constants import BOHR_MAGNETON, MICRO_EV
 from planner.evaluate import evaluate
 from planner.kinds import CHARGE_NOISE, COUNT, DISPLACEMENT, FRACTION, RELATIVE_NOISE, Kind, parse
 from planner.materials import Nucleus, Sourced, edition, isotope_fraction, material, material_titles
-from planner.physics.nuclei import bath_noise
+from planner.physics.nuclei import barrier_bath_noise, bath_noise
 from planner.planfile import read
 from planner.references import references
 from tests.planmaking import of
@@ -182,6 +182,13 @@ def test_every_default_is_read_and_lies_in_its_range(name: str) -> None:
         assert (source.low is None) == (source.high is None), key
 
 
+def test_couplings_lie_in_their_ranges() -> None:
+    for name in NAMES:
+        for nucleus in (*material(name).nuclei, material(name).barrier):
+            low, high = nucleus.moment_ends
+            assert low <= nucleus.moment <= high, (name, nucleus.isotope)
+
+
 def test_every_value_has_a_status_and_a_known_reference() -> None:
     for where, source in every_source():
         assert source.reference in references(), where
@@ -210,6 +217,27 @@ def test_natural_hosts_hold_the_natural_fraction() -> None:
 def test_only_silicon_germanium_wells_have_a_barrier_share() -> None:
     shares = {name: default(name, "barrier_share") for name in NAMES}
     assert {name for name, share in shares.items() if share > 0} == {n for n in NAMES if n.startswith("si-sige")}
+
+
+def barrier_noise(name: str) -> float:
+    found = barrier_bath_noise(
+        moment=np.array(material(name).barrier.moment),
+        germanium=np.array(default(name, "barrier_germanium")), spinful=np.array(default(name, "barrier_spinful")),
+        share=np.array(default(name, "barrier_share")), nuclei=np.array(default(name, "barrier_nuclei")),
+    )  # fmt: skip
+    return float(found)
+
+
+@pytest.mark.parametrize("name", [name for name in NAMES if not name.startswith("si-sige")])
+def test_a_barrier_without_a_share_makes_no_noise(name: str) -> None:
+    assert barrier_noise(name) == 0
+
+
+def test_the_shipped_barrier_shortens_a_purified_well_as_published() -> None:
+    # Jacobson et al. (2026), second hand: S-T0 pair in an 800 ppm well, 4.41 us; two equal dots, numbers as shipped
+    well = 1 / (np.sqrt(2) * np.pi * t2_star("si-sige-800ppm", nuclei=default("si-sige-800ppm", "nuclei")))
+    pair = np.sqrt(2) * np.hypot(well, barrier_noise("si-sige-800ppm"))
+    assert 1 / (np.sqrt(2) * np.pi * pair) == pytest.approx(4.41e-6, rel=0.3)
 
 
 def test_carriers_and_valleys() -> None:

@@ -177,6 +177,10 @@ def test_crosstalk_image_leakage_and_mixing() -> None:
     assert of(evaluation, "tones.image_flip", 0) == pytest.approx(image**2 / (1 + image**2), rel=1e-6)
     leak = 10**-2.5 * 2e6 / abs(14.1e9 - first)
     assert of(evaluation, "tones.leakage_flip", 0) == pytest.approx(leak**2 / (1 + leak**2), rel=1e-6)
+    worst_leak = 10**-2.5 * 2e6 / min(abs(14.1e9 - first), abs(14.1e9 - first - distance))
+    assert margin(evaluation, "leakage")[1] == pytest.approx(1e-3 * (1 + worst_leak**2) / worst_leak**2, rel=1e-6)
+    loud, strong = evaluated(TWO, typed, {"source.image": "-10 dB"}), image * 10**1.5
+    assert margin(loud, "image")[1] == pytest.approx(1e-3 * (1 + strong**2) / strong**2, rel=1e-6)
     far = max(abs(first - 14.1e9), abs(first + distance - 14.1e9))
     assert margin(evaluation, "mixing")[1] == pytest.approx(500e6 / far, rel=1e-9)
 

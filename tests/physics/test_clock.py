@@ -76,6 +76,22 @@ def test_flicker_agrees_with_the_spectral_integral() -> None:
     assert flicker(run, gap, averaging) == near(integral, rel=1e-5)
 
 
+@pytest.mark.parametrize("noise", ["white", "flicker"])
+def test_the_change_of_the_clock_is_its_spectral_integral(noise: str) -> None:
+    """Two of the five noise types of SP 1065: the program has white FM and flicker FM; white PM, flicker PM and random walk
+    FM have no given, ageing stands for what is slower. White FM counts in the calibration's mean alone (see the law).
+    """
+    run, gap, averaging = 1.0, 5.0, 10.0
+    frequency = np.geomspace(1e-7, 1e4, 2_000_001)
+    calibration = np.sinc(frequency * averaging) * np.exp(-2j * np.pi * frequency * (gap + averaging / 2))
+    later = np.sinc(frequency * run) * np.exp(1j * np.pi * frequency * run)
+    if noise == "white":  # S_y = h0 = 2 sigma^2(1 s)
+        integral = simpson(2 * np.abs(calibration) ** 2 * frequency, x=np.log(frequency))
+    else:  # S_y = h_-1/f with sigma^2 = 2 ln2 h_-1
+        integral = simpson(np.abs(later - calibration) ** 2, x=np.log(frequency)) / TWO_LN2
+    assert change(**{noise: 1.0}) ** 2 == near(integral, rel=1e-4)
+
+
 @pytest.mark.parametrize("averaging", [1e-4, 0.2, 10.0, 1e5])
 @pytest.mark.parametrize("gap", [5.0, 1800.0])
 @pytest.mark.parametrize("ratio", [1e-9, 1e-6, 1e-3, 0.05, 0.0999, 0.1001, 1.0, 100.0])

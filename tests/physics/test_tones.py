@@ -70,6 +70,7 @@ def test_distance_from_the_band() -> None:
 
 def test_intermediate_and_loose_tones() -> None:
     frequency, oscillator = row(15.9e9, 16.3e9), row(16e9)
+    np.testing.assert_array_equal(tones.local_tone(oscillator=oscillator), [16e9])
     np.testing.assert_allclose(
         tones.intermediate_frequency(frequency=frequency, oscillator=oscillator), [-0.1e9, 0.3e9]
     )

@@ -152,3 +152,51 @@ def test_field_along_an_axis_of_any_length_and_sign() -> None:
 def test_the_lowest_frequency_in_use_ignores_spares() -> None:
     np.testing.assert_array_equal(wiring.lowest_in_use(frequency=row(3, 1, 2), in_use=row(1, 0, 1)), [2.0])
     assert wiring.power_left(cooling_power=row(12e-6), base_load=row(3e-6)) == near([9e-6])
+
+
+@pytest.mark.parametrize("ratio", [1e-4, 1e-2])
+def test_a_hot_source_gives_johnson_noise(ratio: float) -> None:
+    # textbook: k T/(h f) photons a mode where h f << k T, less half a photon, and next h f/(12 k T)
+    found = photons(ratio * constants.k * 4.0 / constants.h, np.ones((1, 3)), source=4.0)
+    assert found == near(1 / ratio - 0.5 + ratio / 12, rel=1e-9)
+
+
+@pytest.mark.parametrize("ratio", [15.0, 40.0])
+def test_a_cold_source_gives_a_boltzmann_factor(ratio: float) -> None:
+    # textbook (Wien): exp(-h f/(k T)) photons where h f >> k T
+    found = photons(ratio * constants.k * 0.02 / constants.h, np.ones((1, 3)), source=0.02)
+    assert found == near(np.exp(-ratio), rel=1e-6)
+
+
+def pad(decibels: float) -> tuple[float, float]:
+    """Series arms and shunt of a matched 50 ohm T pad: Z (k - 1)/(k + 1) and 2 Z k/(k^2 - 1), k its voltage ratio."""
+    k = 10 ** (decibels / 20)
+    return 50 * (k - 1) / (k + 1), 100 * k / (k**2 - 1)
+
+
+@pytest.mark.parametrize(("decibels", "series", "shunt"), [(3, 8.55, 141.9), (10, 25.97, 35.14), (20, 40.91, 10.10)])
+def test_resistors_of_the_pads_are_those_of_handbooks(decibels: float, series: float, shunt: float) -> None:
+    assert pad(decibels) == near((series, shunt), rel=1e-3)  # resistor tables of T attenuators, from memory
+
+
+def test_matched_pads_in_a_chain_are_warmed_as_the_law_says() -> None:
+    # Kirchhoff from the load backwards: 1 V at 50 ohm behind 20, 10 and 3 dB; what each pad takes is its heat
+    volts, amperes, taken = 1.0, 1 / 50, []
+    for decibels in (3, 10, 20):
+        series, shunt = pad(decibels)
+        leaving = volts * amperes
+        middle = volts + series * amperes
+        amperes += middle / shunt
+        volts = middle + series * amperes
+        assert volts / amperes == near(50.0, rel=1e-12)  # the dc resistance stays that of the line
+        taken.append(volts * amperes - leaving)
+    heat = wiring.stage_heat(
+        device_power=row(1 / 50),
+        duty=row(1),
+        count=row(1),
+        attenuation=attenuators(20, 10, 3),
+        cooling_power=row(1, 1, 1),
+    )
+    np.testing.assert_allclose(heat, taken[::-1], rtol=1e-12)
+    needed = wiring.source_power(device_power=row(1 / 50), attenuation=attenuators(20, 10, 3), cable_loss=row(1))
+    assert float(needed[0]) == near(volts * amperes, rel=1e-12)
