@@ -82,7 +82,7 @@ def decades(low: int, high: int) -> st.SearchStrategy[float]:
     return st.floats(low, high).map(lambda power: round(float(10**power), 9))
 
 
-@settings(max_examples=150, deadline=None)
+@settings(max_examples=60, deadline=None)
 @given(
     tesla=decades(-6, 1).map(lambda tesla: 3 * tesla),
     kelvin=st.floats(0.001, 4),
