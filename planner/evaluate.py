@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from planner.columns import Column, Reason, given_columns, host_columns, pair_columns, swept_column
-from planner.declare import Derived, Input, Lock
+from planner.declare import Derived, Input
 from planner.graph import Graph, givens, graph
 from planner.kinds import Quantity
 from planner.leads import Lead, changes, leads_of, low_end, moved, root_sum_square, scaled
@@ -126,11 +126,6 @@ def resolve_all(plan: Plan) -> dict[str, Resolved]:
 def _names(table: str, rows: Sequence[Any]) -> tuple[str, ...]:
     """Names of rows, or their numbers from 1 where a table has none."""
     return tuple(row.name for row in rows) if table in NAMED else tuple(str(place + 1) for place in range(len(rows)))
-
-
-def too_late(until: Lock | None, passed: str) -> bool:
-    """Whether the lock has been passed."""
-    return until is not None and passed != "none" and until <= Lock[passed.upper()]
 
 
 @dataclass(frozen=True, slots=True)

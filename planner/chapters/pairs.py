@@ -7,7 +7,6 @@ from planner.kinds import FRACTION
 from planner.physics import exchange
 from planner.switches import HAS_PAIRS
 
-_PLACES = {"first": "pair.first_place", "second": "pair.second_place"}
 _NO_NOISE = Unknown("the noise of one of its qubits is not known, or the qubit is dead")
 
 DERIVEDS = (
